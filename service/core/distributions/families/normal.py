@@ -1,0 +1,58 @@
+"""The normal distribution."""
+
+import numpy as np
+from scipy.special import log_ndtr, ndtr, ndtri
+
+from service.core.arrays import INFINITY, MINUS_INFINITY, Numbers
+from service.core.distributions.family import Family, Moments, Support, Tails
+from service.core.parameters import Parameter
+
+HALF_LOG_2PI = 0.9189385332046727418
+SQRT_2PI = 2.5066282746310005024
+
+
+class Normal(Family):
+    """Sums of many small independent effects; the plainest model of a return.
+
+    Both tails are Phi(z) and Phi(-z) with z = (x - mean)/standard_deviation, in logarithms where they underflow
+    (Abramowitz & Stegun 26.2). Error of scipy.special's ndtr, log_ndtr and ndtri against mpmath: 2e-13 relative at a
+    probability of 1e-300, 1e-15 in the body.
+    """
+
+    name = "normal"
+    support_words = "every number"
+    numerical_error = 1e-15
+    mean = Parameter("the centre", example=10)
+    standard_deviation = Parameter("the spread around the centre", above=0, example=2)
+
+    def _score(self, x: Numbers) -> Numbers:
+        return (x - self.mean) / self.standard_deviation
+
+    def tails(self, x: Numbers) -> Tails:
+        z = self._score(x)
+        return Tails(ndtr(z), ndtr(-z))
+
+    def log_tails(self, x: Numbers) -> Tails:
+        z = self._score(x)
+        return Tails(log_ndtr(z), log_ndtr(-z))
+
+    def density(self, x: Numbers) -> Numbers:
+        z = self._score(x)
+        return np.exp(-z * z / 2) / (SQRT_2PI * self.standard_deviation)
+
+    def quantile(self, probability: Numbers, upper: bool) -> Numbers:
+        distance = self.standard_deviation * ndtri(probability)
+        return self.mean - distance if upper else self.mean + distance
+
+    def moments(self) -> Moments:
+        nought = np.zeros_like(self.mean + self.standard_deviation)
+        return Moments(self.mean + nought, self.standard_deviation + nought, nought, nought)
+
+    def most_likely(self) -> Numbers:
+        return self.mean
+
+    def entropy(self) -> Numbers:
+        return np.log(self.standard_deviation) + (HALF_LOG_2PI + 0.5)
+
+    def support(self) -> Support:
+        return Support(MINUS_INFINITY, INFINITY)

@@ -1,0 +1,111 @@
+"""What a distribution family declares, and what follows from the declaration."""
+
+from typing import ClassVar, NamedTuple
+
+import numpy as np
+
+from service.core.arrays import Numbers
+from service.core.declared import Declared
+
+FAMILIES: dict[str, type["Family"]] = {}
+"""Every family by its name, in the order of the files."""
+
+
+class Tails(NamedTuple):
+    """P(X <= x) and P(X > x), or their logarithms: each from a formula of its own, never one minus the other."""
+
+    at_most: Numbers
+    above: Numbers
+
+
+class Moments(NamedTuple):
+    """The first four moments. Infinite ones are inf, those that have no value are nan."""
+
+    mean: Numbers
+    standard_deviation: Numbers
+    skewness: Numbers
+    excess_kurtosis: Numbers
+
+
+class Support(NamedTuple):
+    """The least and the greatest possible value; -inf and inf where there is none."""
+
+    lower: Numbers
+    upper: Numbers
+
+
+class Family(Declared):
+    """Base of every family.
+
+    A family gives `tails` or `log_tails` or both (the other follows by log or exp, so `tails` alone is for laws whose
+    tails do not underflow), `density`, `quantile`, `moments`, `most_likely`, `entropy` and `support`. All take and
+    give float64 values that broadcast with the parameters; arguments are never nan. The callers silence numpy's
+    floating-point warnings and answer probabilities 0 and 1 from the support.
+
+    Its docstring opens with one sentence on what the family is used for (catalogue and reference print it), then names
+    method, source and error.
+    """
+
+    discrete: ClassVar[bool] = False
+    support_words: ClassVar[str] = ""
+    """The support as the reference prints it, in terms of the parameters."""
+    method: ClassVar[str] = "closed_form"
+    quantile_method: ClassVar[str] = "closed_form"
+    numerical_error: ClassVar[float] = 0.0
+    """Bound on the error of every figure: absolute for figures up to 1 in size, relative beyond."""
+    _logs_first: ClassVar[bool] = False
+
+    def __init_subclass__(cls) -> None:
+        cls.declare()
+        if cls.name in FAMILIES:
+            raise TypeError(f"the family {cls.name} is declared twice")
+        own = set(vars(cls))
+        missing = {"density", "quantile", "moments", "most_likely", "entropy", "support"} - own
+        if missing or not own & {"tails", "log_tails"} or not cls.support_words or not cls.numerical_error:
+            raise TypeError(f"{cls.name}: tails, support_words, numerical_error and {sorted(missing)} are needed")
+        cls._logs_first = "tails" not in own
+        FAMILIES[cls.name] = cls
+
+    def tails(self, x: Numbers) -> Tails:
+        """P(X <= x) and P(X > x)."""
+        logs = self.log_tails(x)
+        return Tails(np.exp(logs.at_most), np.exp(logs.above))
+
+    def log_tails(self, x: Numbers) -> Tails:
+        """Give the natural logarithms of P(X <= x) and P(X > x), right where the probability itself underflows."""
+        both = self.tails(x)
+        return Tails(np.log(both.at_most), np.log(both.above))
+
+    def tails_and_logs(self, x: Numbers) -> tuple[Tails, Tails]:
+        """Both, without computing either twice."""
+        if not self._logs_first:
+            return self.tails(x), self.log_tails(x)
+        logs = self.log_tails(x)
+        return Tails(np.exp(logs.at_most), np.exp(logs.above)), logs
+
+    def density(self, x: Numbers) -> Numbers:
+        """Probability density at x; the probability of exactly x for a discrete family."""
+        raise NotImplementedError
+
+    def quantile(self, probability: Numbers, upper: bool) -> Numbers:
+        """Invert the tail: probability strictly between 0 and 1.
+
+        Lower tail: the smallest x with P(X <= x) >= probability. Upper: the smallest x with P(X > x) <= probability.
+        """
+        raise NotImplementedError
+
+    def moments(self) -> Moments:
+        """Mean, standard deviation, skewness, excess kurtosis."""
+        raise NotImplementedError
+
+    def most_likely(self) -> Numbers:
+        """Where the density is greatest, the smallest such value; nan where no value stands out."""
+        raise NotImplementedError
+
+    def entropy(self) -> Numbers:
+        """-E[log density], in nats."""
+        raise NotImplementedError
+
+    def support(self) -> Support:
+        """Least and greatest possible value."""
+        raise NotImplementedError

@@ -1,0 +1,1 @@
+"""Figures of portfolios against a floor: shortfalls, rankings, dominance, confidence."""

@@ -1,0 +1,1 @@
+"""URLs about the process itself: health and the document."""

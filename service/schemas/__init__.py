@@ -1,0 +1,1 @@
+"""JSON to core objects and back."""
