@@ -38,9 +38,9 @@ class Family(Declared):
     """Base of every family.
 
     A family gives `tails` or `log_tails` or both (the other follows by log or exp, so `tails` alone is for laws whose
-    tails do not underflow), `density`, `quantile`, `moments`, `most_likely`, `entropy` and `support`. All take and
-    give float64 values that broadcast with the parameters; arguments are never nan. The callers silence numpy's
-    floating-point warnings and answer probabilities 0 and 1 from the support.
+    tails do not underflow), `density` or `log_density` or both, `quantile`, `moments`, `most_likely`, `entropy` and
+    `support`. All take and give float64 values that broadcast with the parameters; arguments are never nan. The
+    callers silence numpy's floating-point warnings and answer probabilities 0 and 1 from the support.
 
     Its docstring opens with one sentence on what the family is used for (catalogue and reference print it), then names
     method, source and error.
@@ -60,9 +60,12 @@ class Family(Declared):
         if cls.name in FAMILIES:
             raise TypeError(f"the family {cls.name} is declared twice")
         own = set(vars(cls))
-        missing = {"density", "quantile", "moments", "most_likely", "entropy", "support"} - own
-        if missing or not own & {"tails", "log_tails"} or not cls.support_words or not cls.numerical_error:
-            raise TypeError(f"{cls.name}: tails, support_words, numerical_error and {sorted(missing)} are needed")
+        missing = {"quantile", "moments", "most_likely", "entropy", "support"} - own
+        either = all(own & forms for forms in ({"tails", "log_tails"}, {"density", "log_density"}))
+        if missing or not either or not cls.support_words or not cls.numerical_error:
+            raise TypeError(
+                f"{cls.name}: tails, a density, support_words, numerical_error and {sorted(missing)} are needed"
+            )
         cls._logs_first = "tails" not in own
         FAMILIES[cls.name] = cls
 
@@ -85,7 +88,11 @@ class Family(Declared):
 
     def density(self, x: Numbers) -> Numbers:
         """Probability density at x; the probability of exactly x for a discrete family."""
-        raise NotImplementedError
+        return np.exp(self.log_density(x))
+
+    def log_density(self, x: Numbers) -> Numbers:
+        """Give the natural logarithm of `density`, right where the density itself underflows."""
+        return np.log(self.density(x))
 
     def quantile(self, probability: Numbers, upper: bool) -> Numbers:
         """Invert the tail: probability strictly between 0 and 1.

@@ -40,12 +40,16 @@ class Normal(Family):
         z = self._score(x)
         return np.exp(-z * z / 2) / (SQRT_2PI * self.standard_deviation)
 
+    def log_density(self, x: Numbers) -> Numbers:
+        z = self._score(x)
+        return -z * z / 2 - HALF_LOG_2PI - np.log(self.standard_deviation)
+
     def quantile(self, probability: Numbers, upper: bool) -> Numbers:
         distance = self.standard_deviation * ndtri(probability)
         return self.mean - distance if upper else self.mean + distance
 
     def moments(self) -> Moments:
-        nought = np.zeros_like(self.mean + self.standard_deviation)
+        nought = 0 * (self.mean + self.standard_deviation)
         return Moments(self.mean + nought, self.standard_deviation + nought, nought, nought)
 
     def most_likely(self) -> Numbers:

@@ -1,0 +1,1 @@
+"""Numerical kernels of the families: each takes and gives float64 that broadcast, tails as logarithms."""
