@@ -22,3 +22,9 @@ def number(value: float) -> Numbers:
 MINUS_INFINITY = number(-np.inf)
 INFINITY = number(np.inf)
 NO_VALUE = number(np.nan)
+
+
+def flat(*values: Numbers | Truths | float) -> tuple[tuple[int, ...], list[Numbers]]:
+    """Broadcast together: the common shape, and each value as a flat float64 array of its own."""
+    together = np.broadcast_arrays(*values)
+    return together[0].shape, [np.array(value, dtype=np.float64).ravel() for value in together]

@@ -2,6 +2,7 @@
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
+from functools import cached_property
 from typing import ClassVar, Self
 
 import numpy as np
@@ -20,6 +21,11 @@ class Parameterisation:
     parameters: Mapping[str, Declaration]
     rules: tuple[Order, ...] = ()
     convert: Convert | None = None
+
+    @cached_property
+    def lists(self) -> frozenset[str]:
+        """Names of the parameters that are lists and so do not stretch to the question's length."""
+        return frozenset(name for name, parameter in self.parameters.items() if not isinstance(parameter, Parameter))
 
 
 def alternative(convert: Convert, rules: tuple[Order, ...] = (), **parameters: Declaration) -> Parameterisation:

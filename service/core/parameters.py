@@ -32,8 +32,8 @@ class Limit:
         holds = RELATIONS[self.relation][1](value, self.bound)
         if holds is True or (holds is not False and holds.all()):
             return None
-        at = () if type(value) is float else (int(np.argmin(holds)),)
-        given = float(value) if type(value) is float else float(np.asarray(value)[at])
+        at = (int(np.argmin(holds)),) if np.ndim(value) else ()
+        given = float(np.asarray(value)[at])
         return Refusal(
             (name, *at),
             self.code,
@@ -113,6 +113,22 @@ class Parameter(Declaration):
             if found is not None:
                 return [found]
         return []
+
+
+REACH = 1e150
+"""How far a location or a scale may go: beyond, its square would leave the doubles."""
+
+
+def anywhere(meaning: str, *, example: float, default: float | None = None) -> Parameter:
+    """Declare a place on the line."""
+    return Parameter(meaning, example=example, default=default, at_least=-REACH, at_most=REACH)
+
+
+def positive(
+    meaning: str, *, example: float, default: float | None = None, at_least: float = 1 / REACH, at_most: float = REACH
+) -> Parameter:
+    """Declare a number above 0: a scale, a rate, a shape within its tested range."""
+    return Parameter(meaning, example=example, default=default, above=0, at_least=at_least, at_most=at_most)
 
 
 class Sample(Declaration):

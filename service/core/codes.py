@@ -1,0 +1,67 @@
+"""Every code that an answer may carry, with its meaning. Codes are never renamed; new ones may join."""
+
+FAULTS = {
+    # 400: what cannot be read
+    "no_body": "The body is empty; a JSON object is needed.",
+    "not_json": "The body is not JSON; `line` and `column` say where reading stopped.",
+    "not_utf8": "The text is not UTF-8, or an escape stands for half a character.",
+    "duplicate_key": "A key stands twice in one object.",
+    "too_deep": "Objects and lists are nested too deeply.",
+    "number_out_of_range": "A number is too large for a double, or an integer has too many digits.",
+    "broken_percent": "The percent-encoding of the query is broken.",
+    "broken_body": "The body ends early, or its chunks are broken.",
+    "broken_request": "The request line or a header cannot be read.",
+    # 413, 414, 431
+    "body_too_large": "The body is longer than the service reads.",
+    "url_too_long": "The address is longer than the service reads; send the question by POST.",
+    "headers_too_large": "The headers are longer or more than the service reads.",
+    # 422: what does not fit
+    "not_an_object": "A JSON object is needed.",
+    "not_an_array": "A JSON array is needed.",
+    "not_a_number": "A JSON number is needed: no text, no true or false.",
+    "not_text": "A JSON string is needed.",
+    "not_true_or_false": "true or false is needed.",
+    "integer_too_large": "Whole numbers beyond 2^53 are not exact in a double.",
+    "must_be_whole": "A whole number is needed; 2.0 counts as whole.",
+    "required": "The field is needed and missing (null counts as missing).",
+    "unknown_field": "There is no such field; `closest` names one that is spelt nearly so.",
+    "unknown_family": "There is no such distribution family.",
+    "unknown_model": "There is no such return model.",
+    "unknown_choice": "The value is none of those listed in `allowed`.",
+    "unknown_format": "The answer is not offered in that format.",
+    "does_not_go_together": "The field belongs to another way of asking than the fields beside it.",
+    "given_twice": "A query parameter stands twice; a list is comma-separated.",
+    "only_in_post": "The field can be sent by POST alone.",
+    "empty": "A list needs an entry.",
+    "too_few": "The list needs more entries.",
+    "too_many": "The list has more entries than the service takes.",
+    "too_long": "The text is longer than the service takes.",
+    "lengths_differ": "All arrays of one question have one length; single numbers stretch to it.",
+    "no_arrays": "A list of numbers cannot stand here; one number is needed.",
+    "must_be_positive": "The number must be above 0.",
+    "must_not_be_negative": "The number must be 0 or more.",
+    "must_be_above": "The number must be above the limit.",
+    "must_be_at_least": "The number must reach the limit.",
+    "must_be_below": "The number must be below the limit.",
+    "must_be_at_most": "The number must not exceed the limit.",
+    "out_of_order": "Two parameters are in the wrong order; `rule` says which comes first.",
+    "not_representable": "The parameters are so extreme that a double cannot hold what follows from them.",
+    "no_event": "An event needs a bound.",
+    "bounds_do_not_go_together": "These bounds cannot describe one event.",
+    "bounds_crossed": "The lower bound lies above the upper one.",
+}
+
+CAUTIONS = {
+    "looks_like_percent": "A figure was perhaps meant in per cent: 5 for 0.05.",
+}
+
+NULL_REASONS = {
+    "positive_infinity": "The figure is plus infinity.",
+    "negative_infinity": "The figure is minus infinity.",
+    "no_value": "The figure has no value for this question.",
+}
+
+METHODS = {
+    "closed_form": "From a formula, by elementary and special functions.",
+    "batch": "Each answer of the batch names its own method.",
+}

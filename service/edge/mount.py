@@ -1,0 +1,142 @@
+"""Declared endpoints and catalogues become routes: accept, body, read, ask, answer, respond."""
+
+from collections.abc import Callable
+from typing import Any
+
+from flask import Flask, Request, Response, request
+from marshmallow import ValidationError
+from werkzeug.exceptions import NotAcceptable, NotFound
+
+from service.edge.problems import Problems
+from service.edge.query import FlatQuery
+from service.edge.request_body import read_body
+from service.edge.respond import JSON, Responder, dump, entity_tag, fingerprint, not_modified
+from service.edge.settings import Settings
+from service.edge.strict_json import read
+from service.endpoints.declaration import Catalogue, Endpoint
+from service.schemas.answers import write_batch
+from service.schemas.question import Asked, ask_batch
+
+
+def current_request() -> Request:
+    """Give the request itself: every use of flask's proxy costs half a microsecond."""
+    return request._get_current_object()  # type: ignore[attr-defined, no-any-return]  # noqa: SLF001 - flask's own way
+
+
+def check_accept(asked: Request, offered: tuple[str, ...] = (JSON,)) -> str:
+    """Give the media type to answer in. Raises NotAcceptable."""
+    accept = asked.environ.get("HTTP_ACCEPT")
+    if accept in (None, "*/*", offered[0]):
+        return offered[0]
+    best = asked.accept_mimetypes.best_match(offered)
+    if best is None:
+        raise NotAcceptable(f"The answer is offered as {' or '.join(offered)}.")
+    return best
+
+
+class MountedEndpoint:
+    """One question over HTTP: POST, and GET where it is declared."""
+
+    def __init__(self, declared: Endpoint, settings: Settings, responder: Responder, problems: Problems) -> None:
+        self.declared = declared
+        self.path = declared.path
+        self.question = declared.question(settings.limits)  # once, not once a request
+        self.query = FlatQuery(self.question) if declared.get else None
+        self.max_body_bytes = settings.max_body_bytes
+        self.responder = responder
+        self.problems = problems
+        self.methods = ["OPTIONS", "POST", *(["GET", "HEAD"] if declared.get else [])]
+        self.allow = ", ".join(sorted(self.methods))
+
+    def view(self) -> Response:
+        """Answer a request."""
+        asked = current_request()
+        if asked.method == "OPTIONS":
+            return self.responder.options(asked, self.allow)
+        check_accept(asked)
+        if asked.method == "POST":
+            return self._post(asked)
+        return self._get(asked)
+
+    def _post(self, asked: Request) -> Response:
+        if asked.environ.get("QUERY_STRING"):
+            return unknown_parameters(asked, self.problems)
+        body = read_body(asked, self.max_body_bytes)
+        data = read(body)
+        try:
+            if self.declared.batch and type(data) is dict and data.get("questions") is not None:
+                answers = [self._answer(one, None) for one in ask_batch(self.question, data)]
+                out = write_batch(answers, fingerprint(self.path, b"\n", body))
+            else:
+                out = self._answer(self.question.ask(data), fingerprint(self.path, b"\n", body))
+        except ValidationError as error:
+            return self.problems.does_not_fit(asked, error, None)
+        return self.responder.respond(asked, dump(out))
+
+    def _get(self, asked: Request) -> Response:
+        assert self.query is not None  # noqa: S101 - GET is routed only where it is declared
+        raw = asked.query_string
+        tag = entity_tag("json", self.path, raw)
+        if not_modified(asked, tag):
+            return self.responder.respond(asked, b"", 304, self.responder.tagged(tag))
+        try:
+            question = self.query.ask(raw)
+        except ValidationError as error:
+            return self.problems.does_not_fit(asked, error, self.query)
+        out = self._answer(question, fingerprint(self.path, b"?", raw))
+        return self.responder.respond(asked, dump(out), headers=self.responder.tagged(tag))
+
+    def _answer(self, question: Asked, mark: str | None) -> dict[str, Any]:
+        return self.declared.write(self.declared.compute(question), question.length, mark)
+
+
+class MountedCatalogue:
+    """One fixed list over HTTP: GET and HEAD, printed once."""
+
+    allow = "GET, HEAD, OPTIONS"
+
+    def __init__(self, declared: Catalogue, responder: Responder, problems: Problems) -> None:
+        self.declared = declared
+        self.responder = responder
+        self.problems = problems
+        self.printed: dict[str, bytes] = {}
+
+    def view(self, **names: str) -> Response:
+        """Answer a request."""
+        asked = current_request()
+        if asked.method == "OPTIONS":
+            return self.responder.options(asked, self.allow)
+        check_accept(asked)
+        if asked.query_string:
+            return unknown_parameters(asked, self.problems)
+        path = self.declared.path.format(**names)
+        if path not in self.printed:
+            found = self.declared.read(**names)
+            if found is None:
+                raise NotFound
+            self.printed[path] = dump(found)
+        tag = entity_tag("json", path)
+        headers = self.responder.tagged(tag)
+        if not_modified(asked, tag):
+            return self.responder.respond(asked, b"", 304, headers)
+        return self.responder.respond(asked, self.printed[path], headers=headers)
+
+
+def unknown_parameters(asked: Request, problems: Problems) -> Response:
+    """422: an address that takes no query was given one."""
+    errors = [
+        {
+            "parameter": name[:60],
+            "code": "unknown_field",
+            "detail": f"There is no parameter {name[:60]} here.",
+            "params": {},
+        }
+        for name in asked.args
+    ]
+    return problems.answer(asked, 422, "This address takes no query.", "does-not-fit", errors)
+
+
+def mount(app: Flask, path: str, name: str, view: Callable[..., Response], methods: list[str]) -> None:
+    """Add one route; names in braces stand for a part of the path."""
+    rule = path.replace("{", "<").replace("}", ">")
+    app.add_url_rule(rule, name, view, methods=methods, provide_automatic_options=False)

@@ -1,0 +1,58 @@
+"""How a declared class is described to a reader."""
+
+from typing import Any
+
+from service.core.declared import Declared, Parameterisation
+from service.core.parameters import Declaration, Parameter
+from service.schemas.distribution import first_sentence
+from service.schemas.shapes import TEXT, open_object
+
+LIMIT = {"type": ["number", "null"], "format": "double"}
+PARAMETER = open_object(
+    {
+        "name": TEXT,
+        "meaning": TEXT,
+        "required": {"type": "boolean"},
+        "list": {"type": "boolean"},
+        "whole": {"type": "boolean"},
+        "default": LIMIT,
+        "limits": open_object(dict.fromkeys(("above", "at_least", "below", "at_most"), LIMIT)),
+        "example": {},
+    }
+)
+WAY = open_object({"parameters": {"type": "array", "items": PARAMETER}, "rules": {"type": "array", "items": TEXT}})
+
+
+def describe_parameter(parameter: Declaration) -> dict[str, Any]:
+    """Meaning, limits (null: none) and example of one parameter."""
+    limits = {limit.relation: limit.bound for limit in getattr(parameter, "limits", ())}
+    return {
+        "name": parameter.name,
+        "meaning": parameter.meaning,
+        "required": parameter.required,
+        "list": not isinstance(parameter, Parameter),
+        "whole": getattr(parameter, "whole", False),
+        "default": parameter.default,
+        "limits": {relation: limits.get(relation) for relation in ("above", "at_least", "below", "at_most")},
+        "example": parameter.example,
+    }
+
+
+def describe_way(way: Parameterisation) -> dict[str, Any]:
+    """One way to give the parameters."""
+    return {
+        "parameters": [describe_parameter(p) for p in way.parameters.values()],
+        "rules": [rule.words for rule in way.rules],
+    }
+
+
+def describe_ways(kind: type[Declared]) -> dict[str, Any]:
+    """Name, use and every way to give the parameters."""
+    return {
+        "name": kind.name,
+        "used_for": first_sentence(kind),
+        "parameterisations": [describe_way(way) for way in kind.parameterisations],
+    }
+
+
+KIND = {"name": TEXT, "used_for": TEXT, "parameterisations": {"type": "array", "items": WAY}}

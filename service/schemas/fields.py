@@ -1,0 +1,167 @@
+"""The kinds of field a question has. Each reads itself strictly and prints itself as JSON Schema."""
+
+from collections.abc import Callable, Iterable, Iterator, Mapping
+from dataclasses import dataclass
+from typing import Any
+
+from marshmallow.fields import Field
+
+from service.core.arrays import Numbers
+from service.core.parameters import Parameter
+from service.schemas.faults import closest_to, refuse
+from service.schemas.limits import DEFAULT_LIMITS, Limits
+from service.schemas.numbers import number_list, parameter_schema, read_parameter
+
+NULL_OR_ABSENT = {"type": "null"}
+"""How a field that belongs to another branch of a union is printed: null is the same as left out."""
+
+
+@dataclass(frozen=True, slots=True)
+class Given:
+    """What one field of a question was given: its numbers, and the core object that they make.
+
+    `make` is called when the lengths of all arrays of the question are known to agree; it raises DoesNotFit.
+    """
+
+    numbers: Mapping[str, float | Numbers]
+    make: Callable[[], Any]
+    lists: frozenset[str] = frozenset()
+    """Names of lists that belong together and so do not set the length of the question."""
+
+
+MISSING = "missing"
+"""Stands in marshmallow's messages until the question names the field."""
+MESSAGES: dict[str, str | list[Any] | dict[Any, Any]] = {"required": MISSING, "null": MISSING}
+
+
+class StrictField(Field[Any]):
+    """A field where null is the same as left out, and that prints its own schema."""
+
+    default_error_messages = MESSAGES
+    limits: Limits = DEFAULT_LIMITS
+
+    def __init__(self, meaning: str = "", *, required: bool = False) -> None:
+        super().__init__(required=required, allow_none=not required)
+        self.meaning = meaning
+
+    @property
+    def members(self) -> Iterable[str] | None:
+        """Names that stand in a flat query in place of this field's object; None: the field is not an object."""
+        return None
+
+    @property
+    def lists(self) -> frozenset[str]:
+        """Names in a flat query that are lists even with one entry."""
+        return frozenset()
+
+    def read(self, value: Any) -> Any:
+        """Turn a JSON value into what the core takes. Raises ValidationError."""
+        raise NotImplementedError
+
+    def printed(self, components: dict[str, Any]) -> dict[str, Any]:
+        """Give the JSON Schema of the field, adding what it refers to to `components`."""
+        raise NotImplementedError
+
+    def flat(self, name: str) -> Iterator[tuple[str, str, dict[str, Any]]]:
+        """Give the names that stand for this field in a flat query, each with its meaning and schema."""
+        yield name, self.meaning, self.printed({})
+
+    def _deserialize(self, value: Any, attr: str | None, data: Any, **kwargs: Any) -> Any:  # noqa: ARG002
+        return self.read(value)
+
+
+class NumberField(StrictField):
+    """A number within declared limits, or an array of them."""
+
+    def __init__(self, parameter: Parameter, *, required: bool = False, arrays: bool = True) -> None:
+        super().__init__(parameter.meaning, required=required)
+        self.parameter = parameter
+        self.arrays = arrays
+
+    def read(self, value: Any) -> float | Numbers:
+        self.parameter.name = self.name or ""
+        return read_parameter(self.parameter, value, self.limits, self.arrays)
+
+    def printed(self, components: dict[str, Any]) -> dict[str, Any]:  # noqa: ARG002
+        return parameter_schema(self.parameter, self.limits, self.arrays)
+
+    def flat(self, name: str) -> Iterator[tuple[str, str, dict[str, Any]]]:
+        yield name, self.meaning, number_list(self.limits)
+
+
+class ChoiceField(StrictField):
+    """One of several words."""
+
+    def __init__(self, meaning: str, allowed: tuple[str, ...], *, required: bool = False) -> None:
+        super().__init__(meaning, required=required)
+        self.allowed = allowed
+
+    def read(self, value: Any) -> str:
+        if type(value) is not str:
+            raise refuse("not_text", f"One of {', '.join(self.allowed)} is needed.", allowed=list(self.allowed))
+        if value not in self.allowed:
+            raise refuse(
+                "unknown_choice",
+                f"One of {', '.join(self.allowed)} is needed.",
+                allowed=list(self.allowed),
+                closest=closest_to(value, self.allowed),
+            )
+        return value
+
+    def printed(self, components: dict[str, Any]) -> dict[str, Any]:  # noqa: ARG002
+        return {"type": "string", "enum": list(self.allowed), "description": self.meaning}
+
+
+class TextField(StrictField):
+    """Text that is echoed unchanged."""
+
+    def __init__(self, meaning: str, most: int) -> None:
+        super().__init__(meaning)
+        self.most = most
+
+    def read(self, value: Any) -> str:
+        if type(value) is not str:
+            raise refuse("not_text", "A JSON string is needed.")
+        if len(value) > self.most:
+            raise refuse(
+                "too_long",
+                f"At most {self.most} characters; these are {len(value)}.",
+                given=len(value),
+                limit=self.most,
+            )
+        return value
+
+    def printed(self, components: dict[str, Any]) -> dict[str, Any]:  # noqa: ARG002
+        return {"type": "string", "maxLength": self.most, "description": self.meaning}
+
+
+def read_object(value: Any) -> dict[str, Any]:
+    """Refuse what is no JSON object; null members are the same as left out."""
+    if type(value) is not dict:
+        raise refuse("not_an_object", "A JSON object is needed.")
+    return {name: entry for name, entry in value.items() if entry is not None}
+
+
+def closed_object(
+    members: Mapping[str, Any], *, optional: Iterable[str] = (), never: Iterable[str] = (), **more: Any
+) -> dict[str, Any]:
+    """Print an object of exactly these members; those of the union's other branches may only be null."""
+    others = {name: NULL_OR_ABSENT for name in never if name not in members}
+    left_out = set(optional)
+    return {
+        "type": "object",
+        "properties": {**members, **others},
+        "required": [name for name in members if name not in left_out],
+        "additionalProperties": False,
+        **more,
+    }
+
+
+def reference(name: str) -> dict[str, str]:
+    """Refer to a component."""
+    return {"$ref": f"#/components/schemas/{name}"}
+
+
+def class_name(name: str) -> str:
+    """Turn a name of the contract into that of a component: student_t, StudentT."""
+    return "".join(word.title() for word in name.split("_"))

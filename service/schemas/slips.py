@@ -1,0 +1,34 @@
+"""Inputs that look like a slip: answered as asked, with a caution."""
+
+from collections.abc import Mapping
+from typing import Any
+
+import numpy as np
+
+from service.schemas.answers import Caution
+
+OFTEN_TOO_LARGE = 20
+"""So many times the mean a spread of 1 or more looks like per cent beside decimals."""
+
+
+def spread_in_percent(given: Mapping[str, Any], centre: str, spread: str, pointer: str) -> list[Caution]:
+    """Find a spread of 1 or more beside a centre that is small and not 0: 12 beside 0.06."""
+    if centre not in given or spread not in given:
+        return []
+    middle, width = given[centre], given[spread]
+    size = abs(middle)
+    looks = (width >= 1) & (size > 0) & (size < 1) & (width >= OFTEN_TOO_LARGE * size)
+    if not np.any(looks):
+        return []
+    at = int(np.argmax(looks)) if np.ndim(looks) else None
+    width, middle = (float(v if np.ndim(v) == 0 else v[at]) for v in (width, middle))
+    place = f"{pointer}/{spread}" + (f"/{at}" if np.ndim(given[spread]) else "")
+    words = f"A {spread.replace('_', ' ')} of {width:g} beside a {centre.replace('_', ' ')} of {middle:g}"
+    return [
+        Caution(
+            "looks_like_percent",
+            f"{words} was perhaps meant as {width / 100:g}.",
+            place,
+            {"given": width, "perhaps": width / 100, "occurrences": int(np.count_nonzero(looks))},
+        )
+    ]
