@@ -152,7 +152,7 @@ def _within(law: Family, count: Numbers) -> Chances:
     centre = np.where(has_value, mean, 0)
     # A value within rounding of an end counts as the end: a lattice point must not be lost to the last bit.
     reach = reach + SLACK * (np.abs(centre) + reach) if law.discrete else reach
-    figures = between(law, centre - reach, centre + reach)
+    figures = between(law, _cut(law, centre - reach, value_above=True), centre + reach)
     score = np.where(has_value, count, NO_VALUE)[()]
     p, complement, log_p, log_complement = (np.where(has_value, f, NO_VALUE)[()] for f in figures)
     return Chances(p, complement, log_p, log_complement, -score, score)

@@ -76,8 +76,8 @@ class Family(Declared):
 
     def log_tails(self, x: Numbers) -> Tails:
         """Give the natural logarithms of P(X <= x) and P(X > x), right where the probability itself underflows."""
-        both = self.tails(x)
-        return Tails(np.log(both.at_most), np.log(both.above))
+        at_most, above = self.tails(x)
+        return Tails(_log_by_other(at_most, above), _log_by_other(above, at_most))
 
     def tails_and_logs(self, x: Numbers) -> tuple[Tails, Tails]:
         """Both, without computing either twice."""
@@ -116,3 +116,8 @@ class Family(Declared):
     def support(self) -> Support:
         """Least and greatest possible value."""
         raise NotImplementedError
+
+
+def _log_by_other(probability: Numbers, other: Numbers) -> Numbers:
+    """Logarithm of a tail; of one above 1/2 through the other one, which keeps the digits of a value near 0."""
+    return np.where(probability > 0.5, np.log1p(-other), np.log(probability))[()]

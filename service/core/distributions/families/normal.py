@@ -5,10 +5,8 @@ from scipy.special import log_ndtr, ndtr, ndtri
 
 from service.core.arrays import INFINITY, MINUS_INFINITY, Numbers
 from service.core.distributions.family import Family, Moments, Support, Tails
-from service.core.parameters import Parameter
-
-HALF_LOG_2PI = 0.9189385332046727418
-SQRT_2PI = 2.5066282746310005024
+from service.core.distributions.kernels.elementary import HALF_LOG_2PI, SQRT_2PI
+from service.core.parameters import anywhere, positive
 
 
 class Normal(Family):
@@ -22,8 +20,8 @@ class Normal(Family):
     name = "normal"
     support_words = "every number"
     numerical_error = 1e-15
-    mean = Parameter("the centre", example=10)
-    standard_deviation = Parameter("the spread around the centre", above=0, example=2)
+    mean = anywhere("the centre", example=10)
+    standard_deviation = positive("the spread around the centre", example=2)
 
     def _score(self, x: Numbers) -> Numbers:
         return (x - self.mean) / self.standard_deviation
