@@ -1,0 +1,81 @@
+"""Many portfolios as one law: those of one model become arrays, the others answer one by one."""
+
+from collections.abc import Hashable, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from service.core.distributions.family import Moments
+from service.core.errors import DoesNotFit
+from service.core.returns import Returns, law_of_horizon
+from service.core.returns.horizon import placed
+from service.core.returns.laws.collected import CollectedLaw, Positions, side_by_side
+
+
+@dataclass(frozen=True)
+class Portfolios:
+    """The portfolios to compare: one Returns each, or one whose parameters are arrays (columns)."""
+
+    returns: Sequence[Returns] | Returns
+    names: Sequence[str | None] = ()
+
+    @property
+    def count(self) -> int:
+        """How many there are."""
+        if isinstance(self.returns, Returns):
+            return int(np.broadcast(*vars(self.returns.model).values()).size)
+        return len(self.returns)
+
+    def name(self, index: int) -> str:
+        """Give the name of a portfolio, or its place in the list."""
+        given = self.names[index] if index < len(self.names) else None
+        return given if given is not None else f"portfolio {index + 1}"
+
+
+@dataclass(frozen=True)
+class Collection:
+    """The law of all portfolios side by side, the moments of their one-period returns, and the groups behind it."""
+
+    law: CollectedLaw
+    moments: Moments
+    groups: tuple[tuple[Returns, Positions], ...]
+
+
+def collected(portfolios: Portfolios, horizon_years: float, parameter_uncertainty: str) -> Collection:
+    """Group the portfolios and give their laws as one. Raises DoesNotFit; paths lead from the question."""
+    if isinstance(portfolios.returns, Returns):
+        groups = [(portfolios.returns, np.arange(portfolios.count))]
+        places: list[tuple[str | int, ...]] = [("portfolio_columns",)]
+    else:
+        groups = _grouped(portfolios.returns)
+        places = [("portfolios", int(positions[0]), "returns") for _, positions in groups]
+    parts, refusals = [], []
+    for (returns, positions), place in zip(groups, places, strict=True):
+        try:
+            parts.append((law_of_horizon(returns, horizon_years, parameter_uncertainty), positions))
+        except DoesNotFit as unfit:
+            refusals += [placed(refusal, place) for refusal in unfit.refusals]
+    if refusals:
+        raise DoesNotFit(refusals)
+    moments = [np.stack(np.broadcast_arrays(*returns.model.moments())) for returns, _ in groups]
+    joined = side_by_side(moments, [positions for _, positions in groups], portfolios.count)
+    return Collection(CollectedLaw(parts, portfolios.count), Moments(*joined), tuple(groups))
+
+
+def _grouped(rows: Sequence[Returns]) -> list[tuple[Returns, Positions]]:
+    """Gather the rows that can be stacked into arrays; a sample stands alone."""
+    places: dict[Hashable, list[int]] = {}
+    for index, row in enumerate(rows):
+        alike = (type(row.model), row.period, row.periods_per_year, row.compounding, row.sample_size is None)
+        places.setdefault(alike if row.model.stacks else index, []).append(index)
+    return [(_stacked([rows[i] for i in indices]), np.array(indices)) for indices in places.values()]
+
+
+def _stacked(rows: Sequence[Returns]) -> Returns:
+    """Give one Returns that holds the rows' parameters as arrays."""
+    first = rows[0]
+    if len(rows) == 1:
+        return first
+    columns = {name: np.array([getattr(row.model, name) for row in rows]) for name in vars(first.model)}
+    sizes = None if first.sample_size is None else np.array([row.sample_size for row in rows], np.float64)
+    return replace(first, model=type(first.model)(**columns), sample_size=sizes)

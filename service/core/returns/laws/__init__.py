@@ -1,0 +1,1 @@
+"""Laws of a return over a horizon, one file a kind."""

@@ -1,0 +1,56 @@
+"""Returns whose growth factor is lognormal."""
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from service.core.arrays import NO_VALUE, Numbers
+from service.core.distributions.family import Moments
+from service.core.errors import Refusal
+from service.core.parameters import Parameter
+from service.core.returns.law import HorizonLaw
+from service.core.returns.laws.lognormal import LognormalLaw
+from service.core.returns.model import ReturnModel
+
+
+class Lognormal(ReturnModel):
+    """Growth that multiplies up over any horizon and never loses everything.
+
+    log(1 + Y) is normal with log variance s^2 = log(1 + volatility^2/(1 + expected_return)^2) and log mean
+    log(1 + expected_return) - s^2/2; both grow with the number of periods (Aitchison & Brown 1957).
+    """
+
+    name = "lognormal"
+    compoundings = ("simple",)
+    divides = ("simple",)
+    predictive = ("simple",)
+    expected_return = Parameter("mean return of one period", above=-1, example=0.06)
+    volatility = Parameter("standard deviation of the return of one period", at_least=0, example=0.1)
+
+    def refusals(self, compounding: str) -> Iterator[Refusal]:
+        yield from super().refusals(compounding)
+        with np.errstate(over="ignore"):
+            lost = ~np.isfinite(np.atleast_1d(self._relative_variance()))
+        if lost.any():
+            detail = "volatility is too large beside 1 + expected_return for double precision."
+            yield Refusal(("volatility",), "not_representable", detail, {"field": "volatility"})
+
+    def _relative_variance(self) -> Numbers:
+        return (self.volatility / (1 + self.expected_return)) ** 2
+
+    def _log_parameters(self) -> tuple[Numbers, Numbers]:
+        variance = np.log1p(self._relative_variance())
+        return np.log1p(self.expected_return) - variance / 2, np.sqrt(variance)
+
+    def moments(self) -> Moments:
+        square = self._relative_variance()
+        mean, deviation, square = np.broadcast_arrays(self.expected_return, self.volatility, square)
+        w = 1 + square
+        spread = deviation > 0
+        skewness = np.where(spread, np.sqrt(square) * (3 + square), NO_VALUE)
+        excess = np.where(spread, square * (((w + 3) * w + 6) * w + 6), NO_VALUE)
+        return Moments(mean, deviation, skewness, excess)
+
+    def horizon_law(self, periods: Numbers, compounding: str) -> HorizonLaw:  # noqa: ARG002 - simple alone
+        log_mean, log_deviation = self._log_parameters()
+        return LognormalLaw(periods * log_mean, np.sqrt(periods) * log_deviation)

@@ -1,0 +1,36 @@
+"""Normally distributed returns, or log returns."""
+
+import numpy as np
+
+from service.core.arrays import NO_VALUE, Numbers
+from service.core.distributions.family import Moments
+from service.core.parameters import Parameter
+from service.core.returns.law import HorizonLaw
+from service.core.returns.laws.lognormal import LognormalLaw
+from service.core.returns.laws.normal import NormalLaw
+from service.core.returns.model import ReturnModel
+
+
+class Normal(ReturnModel):
+    """The usual first model of a yearly return; says little about rare, large losses.
+
+    Y ~ N(expected_return, volatility^2) (Roy 1952). With continuous compounding Y is the log return: its mean and
+    variance grow with the number of periods.
+    """
+
+    name = "normal"
+    divides = ("continuous",)
+    predictive = ("simple", "continuous")
+    normally_distributed = True
+    expected_return = Parameter("mean return of one period", example=0.06)
+    volatility = Parameter("standard deviation of the return of one period", at_least=0, example=0.1)
+
+    def moments(self) -> Moments:
+        mean, deviation = np.broadcast_arrays(self.expected_return, self.volatility)
+        symmetric = np.where(deviation > 0, 0.0, NO_VALUE)
+        return Moments(mean, deviation, symmetric, symmetric)
+
+    def horizon_law(self, periods: Numbers, compounding: str) -> HorizonLaw:
+        if compounding == "continuous":
+            return LognormalLaw(periods * self.expected_return, np.sqrt(periods) * self.volatility)
+        return NormalLaw(self.expected_return, self.volatility)
