@@ -52,10 +52,32 @@ FAULTS = {
 }
 
 CAUTIONS = {
+    "model_not_forecast": "An estimate under the stated assumptions, not advice or a promise; real markets may do worse; "
+    "the rules and the licensed practice of the place where it is shown come first.",
+    "chance_not_size": "This says how often the floor is missed, not how far below it the money may end; read it with "
+    "the average gap.",
+    "longer_is_not_safer": "A longer period makes missing the floor rarer, but the worst results grow with it.",
+    "gap_over_all_outcomes": "This average counts the good outcomes as zero; when the floor is missed, the average gap "
+    "is the larger figure beside it.",
+    "not_the_most_you_can_lose": "Losses larger than this do happen: in about one of so many periods, by its own "
+    "definition.",
+    "loss_from_today_only": "This looks at the end of the period only; on the way the value may stand lower.",
+    "first_is_not_safe": "First means safer than the others in this list, not safe.",
+    "ratio_and_probability_disagree": "By the ratio one portfolio leads, by the chance of missing the floor another; "
+    "the chance is the figure to show.",
+    "none_admissible": "No portfolio keeps the chance of missing the floor within the limit.",
+    "leader_by_luck": "The leader was picked from the same data, so this share is too high, most of all when the "
+    "candidates are much alike.",
+    "independence_assumed": "The correlations of the portfolios are not given; their returns are taken as independent.",
+    "estimates_taken_as_true": "Expected return and risk are taken as known; a return one point lower changes the "
+    "answer.",
     "looks_like_percent": "A figure was perhaps meant in per cent: 5 for 0.05.",
 }
 
 NULL_REASONS = {
+    "no_rank": "The portfolio is not admissible, or the criterion has no value for it.",
+    "needs_sample_size": "The figure needs sample_size: the periods behind the estimates.",
+    "not_computed": "The figure is not computed for so many portfolios, or not asked for.",
     "positive_infinity": "The figure is plus infinity.",
     "negative_infinity": "The figure is minus infinity.",
     "no_value": "The figure has no value for this question.",

@@ -81,7 +81,7 @@ def _request(declared: Endpoint, question: Question, components: dict[str, Any])
     questions = {
         "type": "array",
         "minItems": 1,
-        "maxItems": question.limits.questions,
+        "maxItems": question.service_limits.questions,
         "items": _choice(f"{declared.name}Question", names, components),
     }
     components[batch] = closed_object({"questions": questions}, never=question.fields)
@@ -92,12 +92,10 @@ def _question_components(declared: Endpoint, question: Question, components: dic
     """Print one object for each way to ask."""
     fields: dict[str, StrictField] = dict(question.fields)  # type: ignore[arg-type]
     others = [*fields, *(["questions"] if declared.batch else [])]
-    shapes = question.shapes or (tuple(fields),)
     names = []
-    for shape in shapes:
-        name = f"{declared.name}{'By' + class_name(shape[0]) if question.shapes else ''}Question"
-        members = {n: f.printed(components) for n, f in fields.items() if n in shape}
-        told_by = shape[0] if question.shapes else None
+    for told_by, own in question.ways().items():
+        name = f"{declared.name}{'By' + class_name(told_by) if told_by else ''}Question"
+        members = {n: fields[n].printed(components) for n in own}
         optional = [n for n in members if not fields[n].required and n != told_by]
         components[name] = closed_object(
             members, optional=optional, never=others, description=(type(question).__doc__ or "").strip()

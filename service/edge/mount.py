@@ -7,6 +7,7 @@ from flask import Flask, Request, Response, request
 from marshmallow import ValidationError
 from werkzeug.exceptions import NotAcceptable, NotFound
 
+from service.core.errors import DoesNotFit
 from service.edge.problems import Problems
 from service.edge.query import FlatQuery
 from service.edge.request_body import read_body
@@ -15,6 +16,7 @@ from service.edge.settings import Settings
 from service.edge.strict_json import read
 from service.endpoints.declaration import Catalogue, Endpoint
 from service.schemas.answers import write_batch
+from service.schemas.faults import as_messages
 from service.schemas.question import Asked, ask_batch
 
 
@@ -65,7 +67,7 @@ class MountedEndpoint:
         data = read(body)
         try:
             if self.declared.batch and type(data) is dict and data.get("questions") is not None:
-                answers = [self._answer(one, None) for one in ask_batch(self.question, data)]
+                answers = self._answer_each(ask_batch(self.question, data))
                 out = write_batch(answers, fingerprint(self.path, b"\n", body))
             else:
                 out = self._answer(self.question.ask(data), fingerprint(self.path, b"\n", body))
@@ -80,14 +82,28 @@ class MountedEndpoint:
         if not_modified(asked, tag):
             return self.responder.respond(asked, b"", 304, self.responder.tagged(tag))
         try:
-            question = self.query.ask(raw)
+            out = self._answer(self.query.ask(raw), fingerprint(self.path, b"?", raw))
         except ValidationError as error:
             return self.problems.does_not_fit(asked, error, self.query)
-        out = self._answer(question, fingerprint(self.path, b"?", raw))
         return self.responder.respond(asked, dump(out), headers=self.responder.tagged(tag))
 
     def _answer(self, question: Asked, mark: str | None) -> dict[str, Any]:
-        return self.declared.write(self.declared.compute(question), question.length, mark)
+        try:
+            result = self.declared.compute(question)
+        except DoesNotFit as error:  # what only the computation can tell
+            raise ValidationError(as_messages(error)) from None
+        return self.declared.write(result, question.length, mark)
+
+    def _answer_each(self, questions: list[Asked]) -> list[dict[str, Any]]:
+        answers, faults = [], {}
+        for index, question in enumerate(questions):
+            try:
+                answers.append(self._answer(question, None))
+            except ValidationError as error:
+                faults[index] = error.messages
+        if faults:
+            raise ValidationError({"questions": faults})
+        return answers
 
 
 class MountedCatalogue:

@@ -1,5 +1,8 @@
 """POST and GET /v1/quantiles."""
 
+from collections.abc import Mapping
+from typing import ClassVar
+
 from service.core.distributions.quantiles import central_interval, quantile
 from service.core.parameters import Parameter
 from service.endpoints.declaration import endpoint
@@ -14,7 +17,8 @@ from service.schemas.slips import spread_in_percent
 class QuantileQuestion(Question):
     """Which value has a given probability, or which interval a given coverage?"""
 
-    shapes = (("probability", "distribution", "tail"), ("coverage", "distribution"))
+    told_by = ("probability", "coverage")
+    belongs_to: ClassVar[Mapping[str, str]] = {"tail": "probability"}
     distribution = DistributionField("the law", required=True)
     probability = NumberField(
         Parameter("probability of the tail that the value cuts off", at_least=0, at_most=1, example=0.95)

@@ -8,7 +8,7 @@ from typing import Any
 import numpy as np
 
 from service import __version__
-from service.schemas.shapes import COUNT, TAIL, Shape, constant, open_object, printed
+from service.schemas.shapes import COUNT, TAIL, Fixed, Shape, constant, object_of
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,8 +56,32 @@ class AnswerShape:
 
     def _print(self, form: str) -> dict[str, Any]:
         many = form in MANY_FORMS
-        head = {"form": constant(form)} | ({"length": COUNT} if many else {})
-        return open_object(head | {name: printed(shape, many) for name, shape in self.members.items()} | TAIL)
+        head: dict[str, Shape] = {"form": Fixed(constant(form))}
+        if many:
+            head["length"] = Fixed(COUNT)
+        tail = {name: Fixed(schema) for name, schema in TAIL.items()}
+        return object_of(head | dict(self.members) | tail, many)
+
+
+@dataclass(frozen=True, slots=True)
+class Plain:
+    """A value that is JSON already and is written as it stands."""
+
+    value: Any
+
+
+@dataclass(frozen=True, slots=True)
+class Single:
+    """One number, also where other figures are arrays."""
+
+    value: float
+
+
+@dataclass(frozen=True, slots=True)
+class Ranks:
+    """Ranks from 1; 0 stands for none and is written null."""
+
+    values: Any
 
 
 class Writer:
@@ -75,12 +99,26 @@ class Writer:
             return {name: self.write(inner, f"{pointer}/{name}") for name, inner in value.items()}
         if kind is list:
             return [self.write(inner, f"{pointer}/{index}") for index, inner in enumerate(value)]
+        if kind is Plain:
+            return value.value
+        if kind is Single:
+            return self._number(value.value, pointer)
+        if kind is Ranks:
+            return self._ranks(value.values, pointer)
         if kind is str or kind is bool or kind is int:
             return value
         if value is None:
             self.null_reasons.append({"pointer": pointer, "reason": self.known.get(pointer, "no_value")})
             return None
+        if kind is not np.float64 and kind is not float and value.dtype.kind != "f":
+            return value.tolist()  # counts, words, truths
         return self._number(value, pointer) if self.length is None else self._array(value, pointer, self.length)
+
+    def _ranks(self, values: Any, pointer: str) -> list[int | None]:
+        self.null_reasons += [
+            {"pointer": f"{pointer}/{at}", "reason": "no_rank"} for at in np.flatnonzero(values == 0).tolist()
+        ]
+        return [rank or None for rank in values.tolist()]
 
     def _number(self, value: Any, pointer: str) -> float | None:
         if math.isfinite(value):

@@ -4,7 +4,7 @@ from typing import Any
 
 from service.core.declared import Declared, Parameterisation
 from service.core.parameters import Declaration, Parameter
-from service.schemas.distribution import first_sentence
+from service.schemas.declared import first_sentence
 from service.schemas.shapes import TEXT, open_object
 
 LIMIT = {"type": ["number", "null"], "format": "double"}

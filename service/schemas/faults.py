@@ -1,7 +1,7 @@
 """What does not fit, in the form that a client gets: pointer, code, words, figures."""
 
 from collections.abc import Iterable, Iterator, Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from difflib import get_close_matches
 from typing import Any
 
@@ -55,6 +55,11 @@ def closest_to(name: str, known: Iterable[str]) -> str | None:
 def shown(text: str) -> str:
     """Shorten a client's text for a message."""
     return text if len(text) <= 60 else text[:57] + "..."
+
+
+def inside(error: DoesNotFit, *steps: str | int) -> DoesNotFit:
+    """Lead the refusals of an inner object from the object that holds it."""
+    return DoesNotFit(replace(refusal, path=(*steps, *refusal.path)) for refusal in error.refusals)
 
 
 def as_messages(error: DoesNotFit) -> dict[str | int, Any]:

@@ -4,13 +4,16 @@ from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from typing import Any
 
+import numpy as np
+from marshmallow import ValidationError
 from marshmallow.fields import Field
 
 from service.core.arrays import Numbers
+from service.core.errors import DoesNotFit
 from service.core.parameters import Parameter
-from service.schemas.faults import closest_to, refuse
+from service.schemas.faults import as_messages, closest_to, refuse, unknown
 from service.schemas.limits import DEFAULT_LIMITS, Limits
-from service.schemas.numbers import number_list, parameter_schema, read_parameter
+from service.schemas.numbers import number_list, number_schema, parameter_schema, read_array, read_parameter
 
 NULL_OR_ABSENT = {"type": "null"}
 """How a field that belongs to another branch of a union is printed: null is the same as left out."""
@@ -87,6 +90,95 @@ class NumberField(StrictField):
 
     def flat(self, name: str) -> Iterator[tuple[str, str, dict[str, Any]]]:
         yield name, self.meaning, number_list(self.limits)
+
+
+class GroupField(StrictField):
+    """An object of fields that may each be left out."""
+
+    def __init__(self, meaning: str, inner: Mapping[str, StrictField]) -> None:
+        super().__init__(meaning)
+        self.inner = inner
+
+    def read(self, value: Any) -> dict[str, Any]:
+        found: dict[str, Any] = {}
+        faults: dict[str, Any] = {}
+        for name, entry in read_object(value).items():
+            if name not in self.inner:
+                faults[name] = [unknown(name, self.inner)]
+                continue
+            try:
+                found[name] = self._field(name).read(entry)
+            except ValidationError as error:
+                faults[name] = error.messages
+        if faults:
+            raise ValidationError(faults)
+        return found
+
+    def _field(self, name: str) -> StrictField:
+        field = self.inner[name]
+        field.name, field.limits = name, self.limits
+        return field
+
+    def printed(self, components: dict[str, Any]) -> dict[str, Any]:
+        members = {name: self._field(name).printed(components) for name in self.inner}
+        return closed_object(members, optional=members, description=self.meaning)
+
+
+class MatrixField(StrictField):
+    """A square matrix of numbers, row by row."""
+
+    most = 1000
+
+    def read(self, value: Any) -> Numbers:
+        if type(value) is not list or not all(type(row) is list for row in value):
+            raise refuse("not_an_array", "A JSON array of rows is needed, each an array of numbers.")
+        if not value:
+            raise refuse("empty", "A matrix needs a row.")
+        if len(value) > self.most:
+            raise refuse("too_many", f"At most {self.most} rows.", given=len(value), limit=self.most)
+        rows, faults = [], {}
+        for index, row in enumerate(value):
+            try:
+                rows.append(read_array(row, self.most))
+                if len(row) != len(value):
+                    raise refuse(
+                        "lengths_differ",
+                        f"A square matrix of {len(value)} rows needs as many columns.",
+                        given=len(row),
+                        expected=len(value),
+                    )
+            except ValidationError as error:
+                faults[index] = error.messages
+        if faults:
+            raise ValidationError(faults)
+        return np.stack(rows)
+
+    def printed(self, components: dict[str, Any]) -> dict[str, Any]:  # noqa: ARG002
+        row = {"type": "array", "items": {"type": "number", "format": "double"}, "minItems": 1, "maxItems": self.most}
+        return {"type": "array", "items": row, "minItems": 1, "maxItems": self.most, "description": self.meaning}
+
+
+class LevelsField(StrictField):
+    """A short list of numbers within declared limits, which does not set the length of the question."""
+
+    def __init__(self, parameter: Parameter, most: int) -> None:
+        super().__init__(parameter.meaning)
+        self.parameter = parameter
+        self.most = most
+
+    def read(self, value: Any) -> tuple[float, ...]:
+        if type(value) is not list:
+            raise refuse("not_an_array", "A JSON array of numbers is needed.")
+        read = read_array(value, self.most)
+        self.parameter.name = self.name or ""
+        refusals = self.parameter.refusals(read)
+        if refusals:
+            raise ValidationError(as_messages(DoesNotFit(refusals))[self.parameter.name])
+        return tuple(read.tolist())
+
+    def printed(self, components: dict[str, Any]) -> dict[str, Any]:  # noqa: ARG002
+        one = number_schema(self.parameter)
+        return {"type": "array", "items": one, "minItems": 1, "maxItems": self.most, "description": self.meaning}
 
 
 class ChoiceField(StrictField):

@@ -88,15 +88,19 @@ def parameter_schema(parameter: Declaration, limits: Limits, arrays: bool = True
     if isinstance(parameter, Sample):
         return number_list(limits, least=parameter.least_count) | {"description": words}
     assert isinstance(parameter, Parameter)  # noqa: S101 - the two kinds there are
-    one: dict[str, Any] = {"type": "integer"} if parameter.whole else {"type": "number", "format": "double"}
-    for limit in parameter.limits:
-        one[KEYWORDS[limit.relation]] = limit.bound
+    one = number_schema(parameter)
     if not arrays:
         return one | {"description": words}
     return {"anyOf": [one, number_list(limits, one)], "description": words}
 
 
 KEYWORDS = {"above": "exclusiveMinimum", "at_least": "minimum", "below": "exclusiveMaximum", "at_most": "maximum"}
+
+
+def number_schema(parameter: Parameter) -> dict[str, Any]:
+    """Print one number with its limits as assertions."""
+    one: dict[str, Any] = {"type": "integer"} if parameter.whole else {"type": "number", "format": "double"}
+    return one | {KEYWORDS[limit.relation]: limit.bound for limit in parameter.limits}
 
 
 def number_list(limits: Limits, one: dict[str, Any] | None = None, least: int = 1) -> dict[str, Any]:

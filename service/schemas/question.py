@@ -34,29 +34,26 @@ class Asked:
 
 
 class Question(Schema):
-    """Base of every question.
-
-    `shapes` lists the sets of fields that go together, each with the fields that it needs; the first shape whose
-    needed fields are all given is the one that is meant.
-    """
+    """Base of every question."""
 
     class Meta:
         """Refuse unknown fields."""
 
         unknown = RAISE
 
-    shapes: ClassVar[tuple[tuple[str, ...], ...]] = ()
-    """Ways to ask: the fields of each, the first of which tells it apart. Empty: one way, all fields."""
+    told_by: ClassVar[tuple[str, ...]] = ()
+    """Fields of which exactly one is given; it tells which way of asking is meant. Empty: there is one way."""
+    belongs_to: ClassVar[Mapping[str, str]] = {}
+    """Other fields that go together with one way of asking alone."""
     error_messages: ClassVar[dict[str, str]] = {"unknown": STRANGER}  # type: ignore[misc]  # as in marshmallow
 
     def __init__(self, limits: Limits) -> None:
-        self.limits = limits
+        self.service_limits = limits
         super().__init__()
-        self._alternatives = {shape[0] for shape in self.shapes}
 
     def on_bind_field(self, field_name: str, field_obj: Any) -> None:  # noqa: ARG002
         """Tell each field the limits of this service."""
-        field_obj.limits = self.limits
+        field_obj.limits = self.service_limits
 
     def handle_error(self, error: ValidationError, data: Any, **kwargs: Any) -> None:  # noqa: ARG002
         """Name what marshmallow found itself: unknown fields, missing ones."""
@@ -76,21 +73,16 @@ class Question(Schema):
         if type(data) is not dict:
             raise refuse("not_an_object", "A JSON object is needed.")
         loaded = {name: value for name, value in self.load(data).items() if value is not None}
-        if self.shapes:
-            self._check_shape(loaded)
+        if self.told_by:
+            self._check_way(loaded)
         length = common_length(loaded)
         return Asked(self._make(loaded), {n: v.numbers if type(v) is Given else v for n, v in loaded.items()}, length)
 
-    def _check_shape(self, loaded: Mapping[str, Any]) -> None:
-        told = [name for name in loaded if name in self._alternatives]
+    def _check_way(self, loaded: Mapping[str, Any]) -> None:
+        told = [name for name in self.told_by if name in loaded]
         if not told:
-            raise refuse(
-                "required",
-                "One of " + " and ".join(sorted(self._alternatives)) + " is needed.",
-                one_of=sorted(self._alternatives),
-            )
-        shape = next(shape for shape in self.shapes if shape[0] == told[0])
-        strangers = [name for name in loaded if name not in shape]
+            raise refuse("required", f"One of {' and '.join(self.told_by)} is needed.", one_of=list(self.told_by))
+        strangers = [*told[1:], *(n for n, home in self.belongs_to.items() if n in loaded and home != told[0])]
         if strangers:
             raise ValidationError(
                 {
@@ -104,6 +96,15 @@ class Question(Schema):
                     for name in strangers
                 }
             )
+
+    def ways(self) -> dict[str | None, list[str]]:
+        """Give the fields of each way of asking, by the field that tells it (None: there is one way)."""
+        if not self.told_by:
+            return {None: list(self.fields)}
+        return {
+            way: [n for n in self.fields if (n == way or n not in self.told_by) and self.belongs_to.get(n, way) == way]
+            for way in self.told_by
+        }
 
     @staticmethod
     def _make(loaded: Mapping[str, Any]) -> dict[str, Any]:
@@ -173,7 +174,7 @@ def ask_batch(question: Question, data: Mapping[str, Any]) -> list[Asked]:
 
 
 def _ask_each(question: Question, questions: Any) -> tuple[list[Asked], Any]:
-    most = question.limits.questions
+    most = question.service_limits.questions
     if type(questions) is not list:
         return [], [Fault("not_an_array", "A JSON array of questions is needed.")]
     if not questions:

@@ -6,10 +6,10 @@ from typing import Any, TypeAlias
 
 from service.schemas.fields import reference
 
-ONE = {"type": ["number", "null"], "format": "double"}
-MANY = {"type": ["array", "null"], "items": ONE}
-TEXT = {"type": "string"}
-COUNT = {"type": "integer"}
+ONE: dict[str, Any] = {"type": ["number", "null"], "format": "double"}
+MANY: dict[str, Any] = {"type": ["array", "null"], "items": ONE}
+TEXT: dict[str, Any] = {"type": "string"}
+COUNT: dict[str, Any] = {"type": "integer"}
 
 
 @dataclass(frozen=True, slots=True)
@@ -24,6 +24,7 @@ class Fixed:
     """A member that is the same in number and list answers: its JSON Schema."""
 
     schema: Mapping[str, Any]
+    optional: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,12 +54,19 @@ def printed(shape: Shape, many: bool) -> dict[str, Any]:
         return dict(shape.schema)
     if isinstance(shape, Figure):
         return (MANY if many else ONE) | {"description": shape.meaning}
-    inner = open_object({name: printed(member, many) for name, member in shape.members.items()})
+    inner = object_of(shape.members, many)
     if isinstance(shape, Each):
         inner = {"type": "array", "items": inner}
     if shape.nullable:
         inner["type"] = [inner["type"], "null"]
     return inner | ({"description": shape.meaning} if shape.meaning else {})
+
+
+def object_of(members: Mapping[str, Shape], many: bool) -> dict[str, Any]:
+    """Print an object of shapes."""
+    out = open_object({name: printed(member, many) for name, member in members.items()})
+    out["required"] = [n for n, member in members.items() if not (isinstance(member, Fixed) and member.optional)]
+    return out
 
 
 def open_object(properties: Mapping[str, Any], **more: Any) -> dict[str, Any]:
@@ -71,7 +79,7 @@ def constant(value: str) -> dict[str, str]:
     return {"type": "string", "const": value}
 
 
-TAIL = {
+TAIL: dict[str, dict[str, Any]] = {
     "null_reasons": {"type": "array", "items": reference("NullReason")},
     "basis": reference("Basis"),
     "cautions": {"type": "array", "items": reference("Caution")},

@@ -32,3 +32,20 @@ def spread_in_percent(given: Mapping[str, Any], centre: str, spread: str, pointe
             {"given": width, "perhaps": width / 100, "occurrences": int(np.count_nonzero(looks))},
         )
     ]
+
+
+def threshold_in_percent(threshold: Any) -> list[Caution]:
+    """Find a floor of 100 % or more: 2 for 0.02."""
+    looks = threshold >= 1
+    if not np.any(looks):
+        return []
+    at = int(np.argmax(looks)) if np.ndim(threshold) else None
+    given = float(threshold if at is None else threshold[at])
+    return [
+        Caution(
+            "looks_like_percent",
+            f"A threshold of {given:g} asks for {given:.0%}; was {given / 100:g} meant?",
+            "/threshold" + ("" if at is None else f"/{at}"),
+            {"given": given, "perhaps": given / 100, "occurrences": int(np.count_nonzero(looks))},
+        )
+    ]

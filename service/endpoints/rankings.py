@@ -1,0 +1,110 @@
+"""POST /v1/rankings."""
+
+from service.core.parameters import Parameter
+from service.core.portfolio.collection import Portfolios
+from service.core.portfolio.criteria import CRITERIA
+from service.core.portfolio.question import RankingQuestion as CoreQuestion
+from service.core.portfolio.ranking import rank
+from service.endpoints.declaration import endpoint
+from service.schemas.answers import Result, write_plain
+from service.schemas.cautions import beside_shortfalls
+from service.schemas.fields import ChoiceField, GroupField, MatrixField, NumberField
+from service.schemas.floor_question import FloorQuestion, floor_of, settings_of, slips_in
+from service.schemas.portfolio import ColumnsField, PortfolioListField
+from service.schemas.question import Asked
+from service.schemas.ranking import COLUMNS, ROWS, ranking_cautions, ranking_values
+
+
+class RankingQuestion(FloorQuestion):
+    """Which portfolio is the safest for a floor?"""
+
+    told_by = ("portfolios", "portfolio_columns")
+    portfolios = PortfolioListField("the portfolios to compare")
+    portfolio_columns = ColumnsField("the portfolios to compare, the parameters of one model in columns")
+    threshold = NumberField(Parameter("the least acceptable return", example=0.02), required=True, arrays=False)
+    criterion = ChoiceField("what to rank by; safety_first_ratio is the default", tuple(CRITERIA))
+    limits = GroupField(
+        "what makes a portfolio inadmissible",
+        {
+            "shortfall_probability": NumberField(
+                Parameter("greatest chance of missing the floor", at_least=0, at_most=1, example=0.1),
+                arrays=False,
+            )
+        },
+    )
+    correlations = MatrixField("correlations of the portfolios' returns, in their order")
+
+
+HOUSEHOLD = [
+    {"name": name, "returns": {"model": "normal", "expected_return": mean, "volatility": volatility}}
+    for name, mean, volatility in (("Cautious", 0.04, 0.06), ("Balanced", 0.06, 0.1), ("Growth", 0.08, 0.16))
+]
+EXAMPLES = {
+    "objects": {
+        "portfolios": HOUSEHOLD,
+        "threshold": 0.02,
+        "criterion": "safety_first_ratio",
+        "confidence_levels": [0.95, 0.99],
+    },
+    "columns": {
+        "portfolio_columns": {
+            "model": "normal",
+            "name": ["Cautious", "Balanced", "Growth"],
+            "expected_return": [0.04, 0.06, 0.08],
+            "volatility": [0.06, 0.1, 0.16],
+        },
+        "threshold": 0.02,
+        "criterion": "safety_first_ratio",
+        "confidence_levels": [0.95, 0.99],
+    },
+}
+
+
+@endpoint(
+    "/v1/rankings",
+    name="Ranking",
+    question=RankingQuestion,
+    answers=(ROWS, COLUMNS),
+    examples=EXAMPLES,
+    batch=False,
+    write=write_plain,
+)
+def rankings(asked: Asked) -> Result:
+    """Which portfolio is the safest for this floor?"""
+    columns = asked.get("portfolio_columns")
+    if columns is not None:
+        names, portfolios = columns.names, Portfolios(columns.returns, columns.names)
+        models = {"/portfolio_columns": columns.returns.model}
+    else:
+        rows = asked["portfolios"]
+        names = tuple(row.name for row in rows)
+        portfolios = Portfolios([row.returns for row in rows], names)
+        models = {f"/portfolios/{i}/returns": row.returns.model for i, row in enumerate(rows)}
+    floor = floor_of(asked)
+    limits = asked.get("limits", {})
+    found = rank(
+        portfolios,
+        CoreQuestion(
+            floor,
+            asked.get("criterion", "safety_first_ratio"),
+            limits.get("shortfall_probability"),
+            correlations=asked.get("correlations"),
+            **settings_of(asked),
+        ),
+    )
+    cautions = beside_shortfalls(floor.horizon_years, losses=bool(found.shortfall.tail_losses))
+    cautions += [*ranking_cautions(found), *slips_in(asked, models)]
+    reason = found.confidence_reason or "not_computed"
+    return Result(
+        ranking_values(found, names, columns=columns is not None),
+        found.shortfall.method,
+        found.shortfall.numerical_error,
+        found.shortfall.numerical_error_kind,
+        tuple(cautions),
+        {
+            "/confidence_in_leader": reason,
+            "/pairwise_confidence": reason,
+            "/agreement": "not_computed",
+            "/dominated": "not_computed",
+        },
+    )

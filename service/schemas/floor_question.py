@@ -1,0 +1,72 @@
+"""What shortfalls and rankings ask alike: the floor, the horizon, the levels."""
+
+from collections.abc import Mapping
+from typing import Any
+
+from service.core.arrays import number
+from service.core.parameters import Parameter
+from service.core.portfolio.floor import Floor
+from service.schemas.answers import Caution
+from service.schemas.fields import ChoiceField, LevelsField, NumberField
+from service.schemas.question import Asked, Question
+from service.schemas.slips import spread_in_percent, threshold_in_percent
+
+DEFAULT_LEVELS = (0.95, 0.99)
+DEFAULT_QUANTILE_PROBABILITY = 0.05
+MOST_LEVELS = 20
+
+
+class FloorQuestion(Question):
+    """Base of the questions about a floor; each adds the floor itself, a number or a list."""
+
+    threshold_basis = ChoiceField(
+        "per_year (the default): the threshold is a return per year; over_horizon: over the whole horizon",
+        ("per_year", "over_horizon"),
+    )
+    horizon_years = NumberField(
+        Parameter("length of the horizon in years (default 1)", above=0, at_most=200, example=1), arrays=False
+    )
+    confidence_levels = LevelsField(
+        Parameter("levels of the tail losses (default 0.95 and 0.99)", above=0, below=1, example=0.95), MOST_LEVELS
+    )
+    quantile_probability = NumberField(
+        Parameter("probability of threshold_at_probability (default 0.05)", above=0, below=1, example=0.05),
+        arrays=False,
+    )
+    parameter_uncertainty = ChoiceField(
+        "ignored (the default): estimates are taken as true; predictive: their sampling error widens the law",
+        ("ignored", "predictive"),
+    )
+    equally_likely_outcomes = NumberField(
+        Parameter("adds so many outcomes from worst to best", at_least=2, at_most=1000, whole=True, example=10),
+        arrays=False,
+    )
+
+
+def floor_of(asked: Asked) -> Floor:
+    """Make the floor. Raises DoesNotFit."""
+    threshold = asked["threshold"]
+    return Floor(
+        number(threshold) if isinstance(threshold, float) else threshold,
+        asked.get("threshold_basis", "per_year"),
+        asked.get("horizon_years", 1.0),
+    )
+
+
+def settings_of(asked: Asked) -> dict[str, Any]:
+    """Give the other settings as the core names them."""
+    outcomes = asked.get("equally_likely_outcomes")
+    return {
+        "confidence_levels": asked.get("confidence_levels", DEFAULT_LEVELS),
+        "quantile_probability": asked.get("quantile_probability", DEFAULT_QUANTILE_PROBABILITY),
+        "outcomes_count": None if outcomes is None else int(outcomes),
+        "parameter_uncertainty": asked.get("parameter_uncertainty", "ignored"),
+    }
+
+
+def slips_in(asked: Asked, models: Mapping[str, Any]) -> list[Caution]:
+    """Find a threshold or a volatility that was perhaps meant in per cent; `models` by pointer."""
+    found = threshold_in_percent(asked["threshold"])
+    for pointer, model in models.items():
+        found += spread_in_percent(vars(model), "expected_return", "volatility", pointer)
+    return found
