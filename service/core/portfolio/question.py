@@ -76,7 +76,6 @@ class Ranking:
     """
 
     criterion: str
-    names: tuple[str, ...]
     order: Positions
     ranks: Positions
     admissible: Truths

@@ -45,7 +45,6 @@ def _ranking(portfolios: Portfolios, question: RankingQuestion, collection: Coll
     cautions = _cautions(ranks_by_criterion, ranks, few)
     return Ranking(
         criterion=question.criterion,
-        names=tuple(portfolios.name(i) for i in range(collection.law.count)),
         order=order,
         ranks=ranks,
         admissible=admissible,

@@ -4,7 +4,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from service.core.arrays import INFINITY, MINUS_INFINITY, Numbers, Truths
+from service.core.arrays import INFINITY, MINUS_INFINITY, NO_VALUE, Numbers, Truths
 
 COINCIDENCE = 1e-14
 """Outcomes this close, as a share of the growth factor, are one: a floor of 2 % met by log(1.02) is met."""
@@ -109,3 +109,11 @@ def score(distance: Numbers, spread: Numbers, closeness: Numbers) -> Numbers:
 def log_growth_factor(threshold: Numbers) -> Numbers:
     """log(1 + threshold), minus infinity at and below a total loss."""
     return np.where(threshold > -1, np.log1p(np.maximum(threshold, -1.0)), MINUS_INFINITY)
+
+
+def log_growth_of_point(location: Numbers, scale: Numbers) -> LogGrowth:
+    """Log growth of a law that reaches below a total loss unless its scale is 0: nan, or that of the point."""
+    certain = (scale == 0) & (location > -1)
+    return LogGrowth(
+        np.where(certain, np.log1p(np.where(certain, location, 0.0)), NO_VALUE), np.where(certain, 0.0, NO_VALUE)
+    )

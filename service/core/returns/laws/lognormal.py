@@ -14,29 +14,40 @@ REACH = 9.0
 STEEPEST = 20.0
 """Greatest log range of the integrand over the nodes; beyond it the closed forms do not cancel."""
 FARTHEST = 1e8
+BLOCK = 500
+"""So many at a time stay in the processor's cache."""
+MILD = 0.02
+"""Mills ratios at x and x + s differ enough for 14 digits where s is more than this share of x + s."""
 
 
 class LognormalLaw(HorizonLaw):
-    """log(1 + R) ~ N(log_mean, log_deviation^2), log_deviation >= 0."""
+    """log(1 + R) ~ N(log_mean, log_deviation^2), log_deviation >= 0.
+
+    `moments`: E[R] and sd[R] where they are known better than these parameters give them.
+    """
 
     numerical_error = 1e-14
 
-    def __init__(self, log_mean: Numbers, log_deviation: Numbers) -> None:
+    def __init__(
+        self, log_mean: Numbers, log_deviation: Numbers, moments: tuple[Numbers, Numbers] | None = None
+    ) -> None:
         self.log_mean: Numbers
         self.log_deviation: Numbers
         self.log_mean, self.log_deviation = np.broadcast_arrays(log_mean, log_deviation)
+        self._mean, self._deviation = self._moments() if moments is None else moments
 
     def _distance(self, threshold: Numbers) -> Numbers:
         return log_growth_factor(threshold) - self.log_mean
 
-    def _log_of_mean_growth(self) -> Numbers:
-        return self.log_mean + self.log_deviation**2 / 2
+    def _moments(self) -> tuple[Numbers, Numbers]:
+        log_of_mean = self.log_mean + self.log_deviation**2 / 2
+        return np.expm1(log_of_mean), np.exp(log_of_mean) * np.sqrt(np.expm1(self.log_deviation**2))
 
     def mean(self) -> Numbers:
-        return np.expm1(self._log_of_mean_growth())
+        return self._mean
 
     def standard_deviation(self) -> Numbers:
-        return np.exp(self._log_of_mean_growth()) * np.sqrt(np.expm1(self.log_deviation**2))
+        return self._deviation
 
     def probability_below(self, threshold: Numbers) -> Numbers:
         return ndtr(score(self._distance(threshold), self.log_deviation, LOG_COINCIDENCE))
@@ -60,10 +71,14 @@ class LognormalLaw(HorizonLaw):
 
     def expected_shortfall(self, probability: Numbers) -> Numbers:
         # the gap below the quantile, averaged over the tail, less the quantile: both right to the last digits
-        z = ndtri(probability)
-        distance = self.log_deviation * z
-        first, _ = relative_gaps(distance, self.log_deviation, z + 0 * distance)
-        return np.exp(self.log_mean + distance) * first / probability - np.expm1(self.log_mean + distance)
+        z, deviation = np.broadcast_arrays(ndtri(probability), self.log_deviation)
+        distance = deviation * z
+        share = np.asarray(1 - mills_ratio(deviation - z) / mills_ratio(-z))
+        alike = np.asarray(deviation <= MILD * (np.maximum(-z, 0.0) + deviation))
+        if alike.any():
+            first, _ = relative_gaps(distance[alike], deviation[alike], z[alike])
+            share[alike] = first / np.broadcast_to(probability, z.shape)[alike]
+        return np.exp(self.log_mean + distance) * share - np.expm1(self.log_mean + distance)
 
     def log_growth(self) -> LogGrowth:
         return LogGrowth(self.log_mean, self.log_deviation)
@@ -73,7 +88,7 @@ class LognormalLaw(HorizonLaw):
 
     def ordering(self) -> Ordering:
         zero = np.zeros_like(self.log_mean)
-        return Ordering("lognormal", zero, self.log_mean, self.log_deviation, self._log_of_mean_growth())
+        return Ordering("lognormal", zero, self.log_mean, self.log_deviation, self._mean + zero)
 
 
 def relative_gaps(distance: Numbers, deviation: Numbers, z: Numbers) -> tuple[Numbers, Numbers]:
@@ -90,16 +105,18 @@ def relative_gaps(distance: Numbers, deviation: Numbers, z: Numbers) -> tuple[Nu
     first, second = np.empty(d.size), np.empty(d.size)
     if steep.any():
         first[steep], second[steep] = _closed_forms(s[steep], d[steep])
-    smooth = ~steep
-    if smooth.any():
-        first[smooth], second[smooth] = _by_quadrature(ell[smooth], s[smooth], d[smooth])
+    smooth = np.flatnonzero(~steep)
+    for start in range(0, smooth.size, BLOCK):
+        i = smooth[start : start + BLOCK]
+        first[i], second[i] = _by_quadrature(ell[i], s[i], d[i])
     return first.reshape(shape), second.reshape(shape)
 
 
 def _reach_below(d: Numbers) -> Numbers:
     """Give the t > 0 at which exp(dt - t^2/2) has fallen to exp(-40), for d <= 0."""
     x = np.maximum(-d, 0.0)
-    return 80 / (x + np.sqrt(x * x + 80))
+    reach: Numbers = 80 / (x + np.sqrt(x * x + 80))
+    return reach
 
 
 def _by_quadrature(ell: Numbers, s: Numbers, d: Numbers) -> tuple[Numbers, Numbers]:
@@ -123,6 +140,6 @@ def _closed_forms(s: Numbers, d: Numbers) -> tuple[Numbers, Numbers]:
 def _partial_moment(shift: Numbers, d: Numbers) -> Numbers:
     """E[(G/K)^k; G < K] with shift = k deviation: density(d) times Mills' ratio, or with Phi where that overflows."""
     beyond = shift < d
-    by_mills = normal_density(d) * mills_ratio(np.where(beyond, 0.0, shift - d))
+    by_mills: Numbers = normal_density(d) * mills_ratio(np.where(beyond, 0.0, shift - d))
     by_phi: Numbers = np.exp(np.minimum(shift * (shift / 2 - d), 0.0)) * ndtr(d - shift)
     return np.where(beyond, by_phi, by_mills)

@@ -3,8 +3,8 @@
 import numpy as np
 from scipy.special import ndtr, ndtri
 
-from service.core.arrays import NO_VALUE, Numbers, Truths, number
-from service.core.returns.law import COINCIDENCE, Gaps, HorizonLaw, LogGrowth, Ordering, score
+from service.core.arrays import Numbers, Truths, number
+from service.core.returns.law import COINCIDENCE, Gaps, HorizonLaw, LogGrowth, Ordering, log_growth_of_point, score
 from service.core.returns.mills import mills_ratio, partial_moments
 
 
@@ -51,9 +51,7 @@ class NormalLaw(HorizonLaw):
         return -mean_of_tail
 
     def log_growth(self) -> LogGrowth:
-        certain = (self.scale == 0) & (self.location > -1)
-        growth = np.log1p(np.where(certain, self.location, 0.0))
-        return LogGrowth(np.where(certain, growth, NO_VALUE), np.where(certain, 0.0, NO_VALUE))
+        return log_growth_of_point(self.location, self.scale)
 
     def total_loss_probability(self) -> Numbers:
         return self.probability_at_most(number(-1))

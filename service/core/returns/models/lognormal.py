@@ -9,6 +9,7 @@ from service.core.distributions.family import Moments
 from service.core.errors import Refusal
 from service.core.parameters import Parameter
 from service.core.returns.law import HorizonLaw
+from service.core.returns.laws.exponential_t import predictive_log_growth
 from service.core.returns.laws.lognormal import LognormalLaw
 from service.core.returns.model import ReturnModel
 
@@ -38,10 +39,6 @@ class Lognormal(ReturnModel):
     def _relative_variance(self) -> Numbers:
         return (self.volatility / (1 + self.expected_return)) ** 2
 
-    def _log_parameters(self) -> tuple[Numbers, Numbers]:
-        variance = np.log1p(self._relative_variance())
-        return np.log1p(self.expected_return) - variance / 2, np.sqrt(variance)
-
     def moments(self) -> Moments:
         square = self._relative_variance()
         mean, deviation, square = np.broadcast_arrays(self.expected_return, self.volatility, square)
@@ -51,6 +48,18 @@ class Lognormal(ReturnModel):
         excess = np.where(spread, square * (((w + 3) * w + 6) * w + 6), NO_VALUE)
         return Moments(mean, deviation, skewness, excess)
 
+    def _log_parameters(self) -> tuple[Numbers, Numbers]:
+        variance = np.log1p(self._relative_variance())
+        return np.log1p(self.expected_return) - variance / 2, variance
+
     def horizon_law(self, periods: Numbers, compounding: str) -> HorizonLaw:  # noqa: ARG002 - simple alone
-        log_mean, log_deviation = self._log_parameters()
-        return LognormalLaw(periods * log_mean, np.sqrt(periods) * log_deviation)
+        log_mean, variance = self._log_parameters()
+        moments = self.expected_return, self.volatility
+        if periods != 1:
+            mean = np.expm1(periods * np.log1p(self.expected_return))
+            moments = mean, (1 + mean) * np.sqrt(np.expm1(periods * variance))
+        return LognormalLaw(periods * log_mean, np.sqrt(periods * variance), moments)
+
+    def predictive_law(self, periods: Numbers, compounding: str, sample_size: Numbers) -> HorizonLaw:  # noqa: ARG002
+        log_mean, variance = self._log_parameters()
+        return predictive_log_growth(log_mean, np.sqrt(variance), periods, sample_size)

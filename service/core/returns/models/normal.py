@@ -6,8 +6,10 @@ from service.core.arrays import NO_VALUE, Numbers
 from service.core.distributions.family import Moments
 from service.core.parameters import Parameter
 from service.core.returns.law import HorizonLaw
+from service.core.returns.laws.exponential_t import predictive_log_growth
 from service.core.returns.laws.lognormal import LognormalLaw
 from service.core.returns.laws.normal import NormalLaw
+from service.core.returns.laws.student_t import StudentTLaw
 from service.core.returns.model import ReturnModel
 
 
@@ -34,3 +36,9 @@ class Normal(ReturnModel):
         if compounding == "continuous":
             return LognormalLaw(periods * self.expected_return, np.sqrt(periods) * self.volatility)
         return NormalLaw(self.expected_return, self.volatility)
+
+    def predictive_law(self, periods: Numbers, compounding: str, sample_size: Numbers) -> HorizonLaw:
+        if compounding == "continuous":
+            return predictive_log_growth(self.expected_return, self.volatility, periods, sample_size)
+        scale = self.volatility * np.sqrt(1 + 1 / sample_size)
+        return StudentTLaw(sample_size - 1, self.expected_return, scale)
