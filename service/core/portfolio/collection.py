@@ -9,7 +9,7 @@ from service.core.distributions.family import Moments
 from service.core.errors import DoesNotFit
 from service.core.returns import Returns, law_of_horizon
 from service.core.returns.horizon import placed
-from service.core.returns.laws.collected import CollectedLaw, Positions, side_by_side
+from service.core.returns.laws.collected import CollectedLaw, Positions, side_by_side, stacked
 
 
 @dataclass(frozen=True)
@@ -23,13 +23,16 @@ class Portfolios:
     def count(self) -> int:
         """How many there are."""
         if isinstance(self.returns, Returns):
-            return int(np.broadcast(*vars(self.returns.model).values()).size)
+            model = self.returns.model
+            return int(np.broadcast(*vars(model).values()).size) if model.stacks else 1
         return len(self.returns)
 
-    def name(self, index: int) -> str:
-        """Give the name of a portfolio, or its place in the list."""
+    def name(self, index: int, opening: bool = False) -> str:
+        """Give the name of a portfolio, or its place in the list; `opening` a sentence or not."""
         given = self.names[index] if index < len(self.names) else None
-        return given if given is not None else f"portfolio {index + 1}"
+        if given is not None:
+            return given
+        return f"{'Portfolio' if opening else 'portfolio'} {index + 1}"
 
 
 @dataclass(frozen=True)
@@ -57,7 +60,7 @@ def collected(portfolios: Portfolios, horizon_years: float, parameter_uncertaint
             refusals += [placed(refusal, place) for refusal in unfit.refusals]
     if refusals:
         raise DoesNotFit(refusals)
-    moments = [np.stack(np.broadcast_arrays(*returns.model.moments())) for returns, _ in groups]
+    moments = [stacked(returns.model.moments()) for returns, _ in groups]
     joined = side_by_side(moments, [positions for _, positions in groups], portfolios.count)
     return Collection(CollectedLaw(parts, portfolios.count), Moments(*joined), tuple(groups))
 

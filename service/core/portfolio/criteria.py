@@ -18,6 +18,10 @@ class Criterion:
 
     name: str
     meaning: str
+    noun: str
+    """As in "has no ..."."""
+    superlative: str
+    """As in "has the ..."; {floor} and {horizon} stand for the question's own."""
     better: str
     source: str
     value: Callable[[Shortfall], Numbers]
@@ -30,6 +34,8 @@ CRITERIA = {
         Criterion(
             "safety_first_ratio",
             "how many standard deviations the expected return lies above the floor",
+            "safety-first ratio",
+            "highest safety-first ratio for {floor}",
             HIGHER,
             "Roy 1952",
             lambda figures: figures.safety_first_ratio,
@@ -37,6 +43,8 @@ CRITERIA = {
         Criterion(
             "shortfall_probability",
             "the chance that the return stays below the floor",
+            "chance of missing the floor",
+            "smallest chance of missing {floor}",
             LOWER,
             "Roy 1952",
             lambda figures: figures.shortfall_probability,
@@ -44,6 +52,8 @@ CRITERIA = {
         Criterion(
             "expected_gap",
             "by how much the return misses the floor on average, outcomes above it counting as zero",
+            "average gap",
+            "smallest average gap below {floor}",
             LOWER,
             "Fishburn 1977",
             lambda figures: figures.expected_gap,
@@ -51,6 +61,8 @@ CRITERIA = {
         Criterion(
             "quantile_return",
             "the return that is missed only with the given probability",
+            "return at that probability",
+            "highest return that is missed in {probability} of {horizon}",
             HIGHER,
             "Kataoka 1963",
             lambda figures: figures.threshold_at_probability.threshold,
@@ -58,6 +70,8 @@ CRITERIA = {
         Criterion(
             "expected_return",
             "the expected return, among the portfolios whose chance of missing the floor is within the limit",
+            "finite expected return",
+            "highest expected return",
             HIGHER,
             "Telser 1955",
             lambda figures: np.where(np.isfinite(figures.expected_return), figures.expected_return, NO_VALUE),

@@ -1,15 +1,20 @@
 """Portfolios best first by a criterion, with what else a reader has to know about the order."""
 
+from dataclasses import dataclass
 from itertools import combinations
 
 import numpy as np
 
 from service.core.arrays import NO_VALUE, Truths
 from service.core.portfolio.collection import Collection, Portfolios, collected
+from service.core.portfolio.confidence import confidence_in_leader, pairwise_confidence
 from service.core.portfolio.criteria import CRITERIA, HIGHER
-from service.core.portfolio.question import Agreement, Caution, Ranking, RankingQuestion
+from service.core.portfolio.dominance import dominated
+from service.core.portfolio.estimates import estimates_of, refuse_unless_correlations
+from service.core.portfolio.question import Agreement, Caution, Confidence, Pairwise, Ranking, RankingQuestion
 from service.core.portfolio.ranks import NO_RANK, kendall_tau_b, ranked
 from service.core.portfolio.shortfall import Shortfall, figures
+from service.core.portfolio.summary import Outcome, summary
 from service.core.returns.laws.collected import Positions
 
 MOST_COMPARED = 1_000
@@ -20,6 +25,8 @@ PAIRS_LISTED = 100
 
 def rank(portfolios: Portfolios, question: RankingQuestion) -> Ranking:
     """Rank the portfolios (1 or more). Raises DoesNotFit; paths lead from the question."""
+    if question.correlations is not None:
+        refuse_unless_correlations(question.correlations, portfolios.count)
     collection = collected(portfolios, question.floor.horizon_years, question.parameter_uncertainty)
     with np.errstate(all="ignore"):
         return _ranking(portfolios, question, collection)
@@ -42,7 +49,8 @@ def _ranking(portfolios: Portfolios, question: RankingQuestion, collection: Coll
         for name, criterion in CRITERIA.items()
     }
     few = collection.law.count <= MOST_COMPARED
-    cautions = _cautions(ranks_by_criterion, ranks, few)
+    confidence = _confidence(collection, question, order, admissible)
+    cautions = _cautions(ranks_by_criterion, admissible, few)
     return Ranking(
         criterion=question.criterion,
         order=order,
@@ -51,12 +59,22 @@ def _ranking(portfolios: Portfolios, question: RankingQuestion, collection: Coll
         shortfall=found,
         ranks_by_criterion=ranks_by_criterion,
         agreement=_agreement(ranks_by_criterion) if few else None,
-        dominated=() if few else None,
-        confidence_in_leader=None,
-        pairwise_confidence=None,
-        confidence_reason="needs_sample_size",
-        cautions=cautions,
-        summary="",
+        dominated=dominated(collection.law, order) if few else None,
+        confidence_in_leader=confidence.joint,
+        pairwise_confidence=confidence.pairs if few else None,
+        confidence_reason=confidence.reason,
+        cautions=(*cautions, *confidence.cautions),
+        summary=summary(
+            Outcome(
+                question,
+                order,
+                ranks,
+                ranks_by_criterion["shortfall_probability"],
+                admissible,
+                found.frequencies,
+                portfolios.name,
+            )
+        ),
     )
 
 
@@ -75,10 +93,35 @@ def _agreement(ranks_by_criterion: dict[str, Positions]) -> tuple[Agreement, ...
     return tuple(Agreement((a, b), float(matrix[places[a], places[b]])) for a, b in combinations(ranks_by_criterion, 2))
 
 
-def _cautions(ranks_by_criterion: dict[str, Positions], ranks: Positions, few: bool) -> tuple[Caution, ...]:
-    cautions = [Caution("first_is_not_safe", {})]
-    if not (ranks != NO_RANK).any():
-        cautions = [Caution("none_admissible", {})]
+@dataclass(frozen=True)
+class _InLeader:
+    """The confidence in the leader, or the reason why there is none."""
+
+    joint: Confidence | None
+    pairs: tuple[Pairwise, ...] | None
+    reason: str | None
+    cautions: tuple[Caution, ...]
+
+
+def _confidence(collection: Collection, question: RankingQuestion, order: Positions, admissible: Truths) -> _InLeader:
+    """Compare the leader with every other admissible portfolio, in the order of the ranking."""
+    if not admissible.any():
+        return _InLeader(None, None, "none_admissible", ())
+    estimates = estimates_of(collection, question)
+    if isinstance(estimates, str):
+        return _InLeader(None, None, estimates, ())
+    leader, others = int(order[0]), order[1:][admissible[order[1:]]]
+    joint = confidence_in_leader(estimates, leader, others)
+    chances = pairwise_confidence(estimates, leader, others)
+    pairs = tuple(Pairwise(int(j), float(chance)) for j, chance in zip(others, chances, strict=True))
+    cautions = [Caution("leader_by_luck", {})]
+    if question.correlations is None and others.size:
+        cautions.append(Caution("independence_assumed", {}))
+    return _InLeader(joint, pairs, None, tuple(cautions))
+
+
+def _cautions(ranks_by_criterion: dict[str, Positions], admissible: Truths, few: bool) -> tuple[Caution, ...]:
+    cautions = [Caution("first_is_not_safe" if admissible.any() else "none_admissible", {})]
     pairs = disagreeing_pairs(
         ranks_by_criterion["safety_first_ratio"], ranks_by_criterion["shortfall_probability"], few
     )

@@ -38,6 +38,13 @@ class Ordering(NamedTuple):
     level: Numbers
 
 
+class Atoms(NamedTuple):
+    """The possible values in rising order, and P(R <= each)."""
+
+    values: Numbers
+    cumulative: Numbers
+
+
 class HorizonLaw:
     """The law of R, the simple return over the whole horizon, for one portfolio or an array of them.
 
@@ -96,8 +103,12 @@ class HorizonLaw:
         raise NotImplementedError
 
     def ordering(self) -> Ordering | None:
-        """What decides dominance exactly within the law's kind; None: compare outcomes one by one."""
-        raise NotImplementedError
+        """What decides dominance exactly within the law's kind; None where only the values can tell."""
+        return None
+
+    def atoms(self) -> Atoms | None:
+        """Give the possible values, where they can be listed."""
+        return None
 
 
 def score(distance: Numbers, spread: Numbers, closeness: Numbers) -> Numbers:

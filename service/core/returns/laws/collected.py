@@ -22,6 +22,11 @@ def side_by_side(pieces: Sequence[npt.NDArray[T]], positions: Sequence[Positions
     return whole
 
 
+def stacked(figures: Sequence[Numbers]) -> Numbers:
+    """Put several figures of one law along a new first axis, with an axis for its portfolios even if it has one."""
+    return np.stack(np.broadcast_arrays(*(np.atleast_1d(figure) for figure in figures)))
+
+
 class CollectedLaw(HorizonLaw):
     """Laws side by side: each part answers for the portfolios at its positions, along the last axis of every figure.
 
@@ -55,7 +60,7 @@ class CollectedLaw(HorizonLaw):
         return self._joined(lambda law: law.certain(threshold))
 
     def gaps(self, threshold: Numbers) -> Gaps:
-        both = self._joined(lambda law: np.stack(law.gaps(threshold)))
+        both = self._joined(lambda law: stacked(law.gaps(threshold)))
         return Gaps(both[0], both[1])
 
     def quantile(self, probability: Numbers) -> Numbers:
@@ -68,7 +73,7 @@ class CollectedLaw(HorizonLaw):
         return self._joined(lambda law: law.expected_shortfall(probability))
 
     def log_growth(self) -> LogGrowth:
-        both = self._joined(lambda law: np.stack(law.log_growth()))
+        both = self._joined(lambda law: stacked(law.log_growth()))
         return LogGrowth(both[0], both[1])
 
     def total_loss_probability(self) -> Numbers:

@@ -73,12 +73,13 @@ class LognormalLaw(HorizonLaw):
         # the gap below the quantile, averaged over the tail, less the quantile: both right to the last digits
         z, deviation = np.broadcast_arrays(ndtri(probability), self.log_deviation)
         distance = deviation * z
-        share = np.asarray(1 - mills_ratio(deviation - z) / mills_ratio(-z))
+        share: Numbers = np.asarray(1 - mills_ratio(deviation - z) / mills_ratio(-z))
         alike = np.asarray(deviation <= MILD * (np.maximum(-z, 0.0) + deviation))
         if alike.any():
             first, _ = relative_gaps(distance[alike], deviation[alike], z[alike])
             share[alike] = first / np.broadcast_to(probability, z.shape)[alike]
-        return np.exp(self.log_mean + distance) * share - np.expm1(self.log_mean + distance)
+        loss: Numbers = np.exp(self.log_mean + distance) * share - np.expm1(self.log_mean + distance)
+        return loss
 
     def log_growth(self) -> LogGrowth:
         return LogGrowth(self.log_mean, self.log_deviation)

@@ -1,11 +1,13 @@
 """A return that is one of equally likely observations."""
 
+from functools import cached_property
+
 import numpy as np
 import numpy.typing as npt
 
 from service.core.arrays import NO_VALUE, Numbers, Truths, number
 from service.core.distributions.family import Moments
-from service.core.returns.law import COINCIDENCE, Gaps, HorizonLaw, LogGrowth
+from service.core.returns.law import COINCIDENCE, Atoms, Gaps, HorizonLaw, LogGrowth
 
 LEVEL_TIE = 1e-12
 """A cumulative probability this close to a level is equal to it: 1 - 0.9 is not 0.1 in binary."""
@@ -27,11 +29,15 @@ class SampleLaw(HorizonLaw):
         squares = (2 * self._gap_at[:-1] + share * steps) * steps
         self._square_gap_at = np.concatenate([[0.0], np.cumsum(squares)])
 
+    @cached_property
+    def _moments(self) -> Moments:
+        return sample_moments(self.values)
+
     def mean(self) -> Numbers:
-        return sample_moments(self.values).mean
+        return self._moments.mean
 
     def standard_deviation(self) -> Numbers:
-        return sample_moments(self.values).standard_deviation
+        return self._moments.standard_deviation
 
     def _count(self, threshold: Numbers, side: int) -> npt.NDArray[np.intp]:
         """Observations below the threshold (side -1), or at most it (side 1); near ones count as equal to it."""
@@ -82,8 +88,8 @@ class SampleLaw(HorizonLaw):
     def total_loss_probability(self) -> Numbers:
         return self.probability_at_most(number(-1))
 
-    def ordering(self) -> None:
-        return None
+    def atoms(self) -> Atoms:
+        return Atoms(self.values, np.arange(1, self.count + 1) / self.count)
 
 
 def sample_moments(values: Numbers) -> Moments:
@@ -98,5 +104,6 @@ def sample_moments(values: Numbers) -> Moments:
     if values.min() == values.max():
         return Moments(number(values[0]), number(0), NO_VALUE, NO_VALUE)
     deviation = np.sqrt(variance)
-    third, fourth = (np.power(centred / deviation, k).mean() for k in (3, 4))
-    return Moments(unit * (rough + shift), unit * deviation, third, fourth - 3)
+    z = centred / deviation
+    square = z * z
+    return Moments(unit * (rough + shift), unit * deviation, (square * z).mean(), (square * square).mean() - 3)
