@@ -4,6 +4,8 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 from typing import Any
 
+from service.core.codes import FAULTS
+
 
 @dataclass(frozen=True, slots=True)
 class Refusal:
@@ -17,6 +19,10 @@ class Refusal:
     code: str
     detail: str
     params: Mapping[str, Any] = field(default_factory=dict)
+
+    def __post_init__(self) -> None:
+        if self.code not in FAULTS:
+            raise LookupError(f"the fault code {self.code} is not listed in service.core.codes")
 
 
 class DoesNotFit(ValueError):

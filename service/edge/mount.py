@@ -63,17 +63,19 @@ class MountedEndpoint:
     def _post(self, asked: Request) -> Response:
         if asked.environ.get("QUERY_STRING"):
             return unknown_parameters(asked, self.problems)
-        body = read_body(asked, self.max_body_bytes)
-        data = read(body)
         try:
-            if self.declared.batch and type(data) is dict and data.get("questions") is not None:
-                answers = self._answer_each(ask_batch(self.question, data))
-                out = write_batch(answers, fingerprint(self.path, b"\n", body))
-            else:
-                out = self._answer(self.question.ask(data), fingerprint(self.path, b"\n", body))
+            out = self.reply(read_body(asked, self.max_body_bytes))
         except ValidationError as error:
             return self.problems.does_not_fit(asked, error, None)
         return self.responder.respond(asked, dump(out))
+
+    def reply(self, body: bytes) -> dict[str, Any]:
+        """Answer the body of a POST. Raises Unreadable or ValidationError."""
+        data = read(body)
+        mark = fingerprint(self.path, b"\n", body)
+        if self.declared.batch and type(data) is dict and data.get("questions") is not None:
+            return write_batch(self._answer_each(ask_batch(self.question, data)), mark)
+        return self._answer(self.question.ask(data), mark)
 
     def _get(self, asked: Request) -> Response:
         assert self.query is not None  # noqa: S101 - GET is routed only where it is declared

@@ -9,11 +9,13 @@ from urllib.parse import unquote_to_bytes
 from marshmallow import ValidationError
 
 from service.edge.strict_json import Unreadable
-from service.schemas.faults import Fault, unknown
+from service.schemas.faults import Fault, shown, unknown
 from service.schemas.question import Asked, Question
 
 BROKEN_PERCENT = re.compile(rb"%(?![0-9A-Fa-f]{2})")
 NUMBER = re.compile(r"-?(0|[1-9][0-9]*)(\.[0-9]+)?([eE][+-]?[0-9]+)?")
+OF_QUERY = "?"
+"""Marks faults of the query itself: a parameter may have the name of a field of the body."""
 ONLY_IN_POST = ("questions", "components")
 
 
@@ -49,17 +51,17 @@ class FlatQuery:
         for part in filter(None, raw.split(b"&")):
             name, value = _pair(part)
             if name in seen:
-                faults[name] = [Fault("given_twice", f"{name[:60]} stands twice; a list is comma-separated.")]
+                faults[OF_QUERY + name] = [Fault("given_twice", f"{shown(name)} stands twice; a list has commas.")]
             elif name in ONLY_IN_POST:
-                faults[name] = [Fault("only_in_post", f"{name} can be sent by POST alone.")]
+                faults[OF_QUERY + name] = [Fault("only_in_post", f"{name} can be sent by POST alone.")]
             elif name not in self.homes:
-                faults[name] = [unknown(name, self.homes)]
+                faults[OF_QUERY + name] = [unknown(name, self.homes)]
             else:
                 home = self.homes[name]
                 read = self._value(name, value)
                 (body if home is None else body[home])[name] = read
                 if _too_large(read):
-                    faults[name] = [Fault("number_out_of_range", f"{name} is too large for a double.")]
+                    faults[OF_QUERY + name] = [Fault("number_out_of_range", f"{name} is too large for a double.")]
             seen.add(name)
         return body, faults
 
@@ -70,6 +72,8 @@ class FlatQuery:
 
     def place(self, pointer: str) -> dict[str, Any]:
         """Give the parameter that a pointer into the body stands for: /distribution/mean/3 is mean, entry 3."""
+        if pointer.startswith(f"/{OF_QUERY}"):
+            return {"parameter": pointer.removeprefix(f"/{OF_QUERY}").replace("~1", "/").replace("~0", "~")}
         steps = pointer.split("/")[1:]
         if (
             steps

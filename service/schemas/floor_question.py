@@ -3,7 +3,6 @@
 from collections.abc import Mapping
 from typing import Any
 
-from service.core.arrays import number
 from service.core.parameters import Parameter
 from service.core.portfolio.floor import Floor
 from service.schemas.answers import Caution
@@ -45,9 +44,8 @@ class FloorQuestion(Question):
 
 def floor_of(asked: Asked) -> Floor:
     """Make the floor. Raises DoesNotFit."""
-    threshold = asked["threshold"]
     return Floor(
-        number(threshold) if isinstance(threshold, float) else threshold,
+        asked["threshold"],
         asked.get("threshold_basis", "per_year"),
         asked.get("horizon_years", 1.0),
     )

@@ -39,10 +39,13 @@ def read_array(values: list[Any], most: int, whole: bool = False) -> Numbers:
     kinds = set(map(type, values))  # numpy alone would read true as 1 and "1" as 1
     if kinds <= {int, float}:
         array = np.array(values, dtype=np.float64)
-        exact = int not in kinds or np.abs(array).max() <= LARGEST_EXACT
+        exact = int not in kinds or np.abs(array).max() < LARGEST_EXACT  # at 2^53 it may have been rounded
         if exact and not (whole and (array != np.rint(array)).any()):
             return array
-    raise ValidationError(_faults_by_index(values, whole))
+    faults = _faults_by_index(values, whole)
+    if faults:
+        raise ValidationError(faults)
+    return array
 
 
 def _faults_by_index(values: list[Any], whole: bool) -> dict[int, Any]:

@@ -7,6 +7,7 @@ from typing import Any, ClassVar
 import numpy as np
 from marshmallow import RAISE, Schema, ValidationError
 
+from service.core.arrays import number
 from service.core.errors import DoesNotFit
 from service.schemas.faults import Fault, as_messages, refuse, required, unknown
 from service.schemas.fields import MISSING, Given
@@ -111,7 +112,7 @@ class Question(Schema):
         made, faults = {}, {}
         for name, value in loaded.items():
             try:
-                made[name] = value.make() if type(value) is Given else value
+                made[name] = value.make() if type(value) is Given else number(value) if type(value) is float else value
             except DoesNotFit as error:
                 faults[name] = as_messages(error)
         if faults:

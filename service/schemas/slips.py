@@ -17,7 +17,7 @@ def spread_in_percent(given: Mapping[str, Any], centre: str, spread: str, pointe
         return []
     middle, width = given[centre], given[spread]
     size = abs(middle)
-    looks = (width >= 1) & (size > 0) & (size < 1) & (width >= OFTEN_TOO_LARGE * size)
+    looks = (width >= 1) & (size > 0) & (size < 1) & (width / OFTEN_TOO_LARGE >= size)
     if not np.any(looks):
         return []
     at = int(np.argmax(looks)) if np.ndim(looks) else None
