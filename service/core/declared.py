@@ -58,9 +58,9 @@ class Declared:
         cls.parameterisations = (Parameterisation(own, cls.rules), *cls.alternatives)
         for way in cls.parameterisations:
             for name, parameter in way.parameters.items():
-                if not parameter.meaning or parameter.refusals(np.asarray(parameter.example, np.float64)):
+                if not parameter.meaning or parameter.refusals(parameter.as_numbers(parameter.example)):
                     raise TypeError(f"{cls.name}.{name}: a meaning, and an example within its limits, are needed")
-            cls.make(way, {n: np.asarray(p.example, np.float64)[()] for n, p in way.parameters.items() if p.required})
+            cls.make(way, {n: p.as_numbers(p.example) for n, p in way.parameters.items() if p.required})
 
     @classmethod
     def make(cls, way: Parameterisation, values: Mapping[str, float | Numbers]) -> Self:

@@ -1,6 +1,6 @@
 """Parameters as declarations: meaning, limits and example stand once; checks, schema and catalogue follow."""
 
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from typing import Any, TypeAlias, overload
 
@@ -82,6 +82,10 @@ class Declaration:
         """Whether a question has to give it."""
         return self.default is None
 
+    def as_numbers(self, given: Any) -> Numbers:
+        """Turn what a client gives (a number, a list) into what the class holds."""
+        return np.asarray(given, np.float64)[()]
+
     def refusals(self, value: Any) -> list[Refusal]:
         """Give the first broken limit, if any. `value`: a float or a float64 array, finite."""
         raise NotImplementedError
@@ -131,6 +135,9 @@ def positive(
     return Parameter(meaning, example=example, default=default, above=0, at_least=at_least, at_most=at_most)
 
 
+SHARE_TOLERANCE = 1e-9
+
+
 class Sample(Declaration):
     """A list of numbers that belong together, such as observations: it does not stretch to the question's length."""
 
@@ -149,6 +156,35 @@ class Sample(Declaration):
                 {"at_least": self.least_count, "given": int(value.size)},
             )
         ]
+
+
+class Components(Declaration):
+    """A list of parts with parameters of their own, such as the components of a mixture; it does not stretch either.
+
+    Its value is an array with a row for each part and a column for each of `parts`, in their order. The part named by
+    `share` adds up to 1 within 1e-9.
+    """
+
+    def __init__(self, meaning: str, *, share: str, example: list[dict[str, float]], **parts: Parameter) -> None:
+        super().__init__(meaning, example=example)
+        self.share = share
+        self.parts = parts
+        for name, part in parts.items():
+            part.name = name
+
+    def as_numbers(self, given: Iterable[Mapping[str, float]]) -> Numbers:  # noqa: D102 - as described in Declaration
+        return np.array([[row[name] for name in self.parts] for row in given], dtype=np.float64)
+
+    def refusals(self, value: Numbers) -> list[Refusal]:  # noqa: D102 - as described in Declaration
+        columns = dict(zip(self.parts, value.T, strict=True))
+        for name, part in self.parts.items():
+            for found in part.refusals(columns[name]):
+                return [Refusal((self.name, *found.path[1:], name), found.code, found.detail, found.params)]
+        total = float(columns[self.share].sum())
+        if abs(total - 1) <= SHARE_TOLERANCE:
+            return []
+        detail = f"The {self.share}s of {self.name} must add up to 1; they add up to {total:.15g}."
+        return [Refusal((self.name,), "must_add_up_to_one", detail, {"sum": total, "tolerance": SHARE_TOLERANCE})]
 
 
 @dataclass(frozen=True, slots=True)

@@ -36,7 +36,7 @@ def between(law: Family, low: Numbers, high: Numbers) -> tuple[Numbers, Numbers,
     if narrow.any():
         width = np.where(narrow, high - low, 0)
         direct = _log_sum(law, low, high) if law.discrete else _log_integral(law, low, width)
-        rounding = 8 * EPS * (16 - log_more) / -np.expm1(ratio)
+        rounding = 8 * EPS * (16 - log_more) / np.abs(np.expm1(ratio))
         better = narrow & (np.abs(direct - log_probability) <= rounding)
         log_probability = np.where(better, direct, log_probability)
         probability = np.where(better, np.exp(direct), probability)

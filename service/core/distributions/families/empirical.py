@@ -56,9 +56,11 @@ class Empirical(Family):
         # a power of two, so that scaling is exact and no square leaves the doubles
         unit = np.ldexp(1.0, np.frexp(np.abs(self._sorted).max())[1])
         scaled = self._sorted / unit
+        # offsets from a value near the mean are exact where it is far from 0, and so keep the digits of the spread
         rough = scaled.mean()
-        centre = rough + (scaled - rough).mean()
-        offsets = scaled - centre
+        beside = scaled - rough
+        centre = rough + beside.mean()
+        offsets = beside - beside.mean()
         spread = np.sqrt(np.mean(offsets * offsets))
         scores = offsets / np.where(self._distinct[0].size > 1, spread, NO_VALUE)
         return Moments(centre * unit, spread * unit, np.mean(scores**3), np.mean(scores**4) - 3)

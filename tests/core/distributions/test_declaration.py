@@ -1,0 +1,258 @@
+"""A family is one class: its declaration is checked when it is made, its parameters when they are given."""
+
+from typing import Any
+
+import numpy as np
+import pytest
+
+from service.core.arrays import Numbers, number
+from service.core.distributions import FAMILIES, Family
+from service.core.distributions.family import Moments, Support, Tails
+from service.core.errors import DoesNotFit
+from service.core.parameters import Components, Order, Parameter, Sample, anywhere, positive
+from tests.core.distributions.laws import example_of, law
+
+
+def whole_body(**changes: Any) -> dict[str, Any]:
+    """The body of a complete family class."""
+
+    def form(self: Family, x: Numbers) -> Numbers:
+        return x
+
+    body = {
+        "__doc__": "Something for tests.",
+        "name": "for_tests",
+        "support_words": "every number",
+        "numerical_error": 1e-15,
+        "spread": Parameter("the spread", above=0, example=1),
+        **dict.fromkeys(("tails", "density", "quantile", "moments", "most_likely", "entropy", "support"), form),
+    }
+    return {name: value for name, value in (body | changes).items() if value is not None}
+
+
+def declare(body: dict[str, Any]) -> type[Family]:
+    for name, value in body.items():
+        if hasattr(value, "__set_name__"):
+            value.__set_name__(object, name)
+    return type("ForTests", (Family,), body)
+
+
+@pytest.mark.parametrize(
+    ("changes", "message"),
+    [
+        ({"__doc__": None}, "a docstring and a name"),
+        ({"name": None}, "a docstring and a name"),
+        ({"name": "normal"}, "declared twice"),
+        ({"tails": None}, "are needed"),
+        ({"density": None}, "are needed"),
+        ({"quantile": None}, "quantile"),
+        ({"support": None}, "support"),
+        ({"support_words": None}, "support_words"),
+        ({"numerical_error": None}, "numerical_error"),
+        ({"spread": Parameter("the spread", above=0, example=-1)}, "an example within its limits"),
+        ({"spread": Parameter("", above=0, example=1)}, "a meaning"),
+    ],
+)
+def test_a_declaration_that_is_not_whole_is_refused(changes: dict[str, Any], message: str) -> None:
+    before = dict(FAMILIES)
+    with pytest.raises(TypeError, match=message):
+        declare(whole_body(**changes))
+    assert before == FAMILIES
+
+
+def test_an_example_that_breaks_a_rule_is_refused() -> None:
+    body = whole_body(
+        lower=Parameter("an end", example=2), upper=Parameter("an end", example=1), rules=(Order("lower", "upper"),)
+    )
+    with pytest.raises(DoesNotFit, match="lower < upper is needed"):
+        declare(body)
+
+
+def test_a_whole_declaration_joins_the_registry() -> None:
+    try:
+        kind = declare(whole_body())
+        assert FAMILIES["for_tests"] is kind
+    finally:
+        FAMILIES.pop("for_tests", None)
+
+
+@pytest.mark.parametrize("kind", FAMILIES.values(), ids=str)
+def test_declared_examples_work(kind: type[Family]) -> None:
+    for way in range(len(kind.parameterisations)):
+        made = example_of(kind, way)
+        with np.errstate(all="ignore"):
+            middle = made.quantile(number(0.5), upper=False)
+            assert isinstance(made.tails(middle), Tails)
+            assert isinstance(made.moments(), Moments)
+            assert isinstance(made.support(), Support)
+        assert np.isfinite(middle)
+
+
+@pytest.mark.parametrize("kind", FAMILIES.values(), ids=str)
+def test_the_docstring_opens_with_what_the_family_is_used_for(kind: type[Family]) -> None:
+    first = (kind.__doc__ or "").strip().split("\n\n")[0]
+    assert first.endswith(".")
+    assert len(first) < 260
+
+
+def limited() -> list[Any]:
+    """Every limit of every parameter of every family, with a value just beyond it."""
+    cases = []
+    for kind in FAMILIES.values():
+        for way, declared in enumerate(kind.parameterisations):
+            for name, parameter in declared.parameters.items():
+                for limit in parameter.limits if isinstance(parameter, Parameter) else ():
+                    beyond = {
+                        "above": limit.bound,
+                        "below": limit.bound,
+                        "at_least": np.nextafter(limit.bound, -np.inf),
+                        "at_most": np.nextafter(limit.bound, np.inf),
+                    }[limit.relation]
+                    cases.append(
+                        pytest.param(kind, way, name, limit, beyond, id=f"{kind.name}-{way}-{name}-{limit.relation}")
+                    )
+    return cases
+
+
+@pytest.mark.parametrize(("kind", "way", "name", "limit", "beyond"), limited())
+def test_parameters_beyond_their_limits_are_refused(
+    kind: type[Family], way: int, name: str, limit: Any, beyond: float
+) -> None:
+    declared = kind.parameterisations[way].parameters
+    given = {n: p.example for n, p in declared.items()} | {name: beyond}
+    with pytest.raises(DoesNotFit) as refused:
+        law(kind.name, way, **given)
+    (refusal,) = refused.value.refusals
+    assert (refusal.path, refusal.code) == ((name,), limit.code)
+    assert refusal.params[limit.relation] == limit.bound
+
+
+def test_a_refusal_names_the_entry_of_an_array() -> None:
+    with pytest.raises(DoesNotFit) as refused:
+        law("normal", mean=0, standard_deviation=[1, 2, -3])
+    (refusal,) = refused.value.refusals
+    assert (refusal.path, refusal.code) == (("standard_deviation", 2), "must_be_positive")
+    assert refusal.detail == "standard_deviation must be above 0; it is -3."
+
+
+def test_a_limit_says_itself_in_words() -> None:
+    cases: list[tuple[dict[str, Any], str, str]] = [
+        ({"above": 0.0}, "above 0", "must_be_positive"),
+        ({"at_least": 0.0}, "0 or more", "must_not_be_negative"),
+        ({"below": 0.0}, "below 0", "must_be_below"),
+        ({"at_most": 12.5}, "at most 12.5", "must_be_at_most"),
+    ]
+    for limits, words, code in cases:
+        (limit,) = Parameter("a number", example=1, **limits).limits
+        assert (limit.words, limit.code) == (words, code)
+
+
+@pytest.mark.parametrize(
+    ("given", "path"),
+    [
+        ({"lower": 2, "upper": 1}, ("upper",)),
+        ({"lower": 1, "upper": 1}, ("upper",)),
+        ({"lower": [0, 5], "upper": 1}, ("upper",)),
+        ({"lower": [0, 5], "upper": [1, 4]}, ("upper", 1)),
+    ],
+)
+def test_ends_in_the_wrong_order_are_refused(given: dict[str, Any], path: tuple[Any, ...]) -> None:
+    with pytest.raises(DoesNotFit) as refused:
+        law("uniform", **given)
+    (refusal,) = refused.value.refusals
+    assert (refusal.path, refusal.code) == (path, "out_of_order")
+    assert refusal.params["rule"] == "lower < upper"
+
+
+def test_ends_may_be_equal_where_the_rule_says_so() -> None:
+    assert law("discrete_uniform", lowest=2, highest=2).entropy() == 0
+    with pytest.raises(DoesNotFit, match="lowest <= highest"):
+        law("discrete_uniform", lowest=2, highest=1)
+
+
+def test_a_sample_needs_an_entry() -> None:
+    with pytest.raises(DoesNotFit) as refused:
+        law("empirical", observations=[])
+    (refusal,) = refused.value.refusals
+    assert (refusal.path, refusal.code) == (("observations",), "too_few")
+
+
+def test_another_way_to_give_the_parameters() -> None:
+    growth = law("lognormal", 1, mean=1.07, standard_deviation=0.2)
+    assert growth.moments().mean == pytest.approx(1.07, rel=1e-15, abs=0)
+    assert growth.moments().standard_deviation == pytest.approx(0.2, rel=1e-15, abs=0)
+    heavy = law("student_t", 1, degrees_of_freedom=3, mean=0.05, standard_deviation=0.2)
+    assert heavy.moments().standard_deviation == pytest.approx(0.2, rel=1e-15, abs=0)
+
+
+def test_a_spread_that_a_double_cannot_hold_is_refused() -> None:
+    for given in ({"mean": 1e100, "standard_deviation": 1e-100}, {"mean": [1, 1e-100], "standard_deviation": 1e100}):
+        with pytest.raises(DoesNotFit) as refused:
+            law("lognormal", 1, **given)
+        assert {refusal.code for refusal in refused.value.refusals} == {"not_representable"}
+
+
+def test_defaults_are_filled_in() -> None:
+    assert (
+        law("student_t", degrees_of_freedom=5).moments()
+        == law("student_t", degrees_of_freedom=5, location=0, scale=1).moments()
+    )
+
+
+def test_a_class_shows_its_declaration_and_an_instance_its_value() -> None:
+    kind: Any = FAMILIES["normal"]
+    assert kind.mean.meaning == "the centre"
+    assert kind.mean.required
+    assert kind.parameterisations[0].lists == frozenset()
+    made: Any = kind()
+    with pytest.raises(AttributeError, match="made without mean"):
+        made.mean  # noqa: B018 - reading it is the test
+
+
+def test_kinds_of_parameters() -> None:
+    assert [limit.bound for limit in anywhere("a place", example=0).limits] == [-1e150, 1e150]
+    assert [limit.bound for limit in positive("a width", example=1).limits] == [0, 1e-150, 1e150]
+    assert Sample("some numbers", example=[1, 2]).refusals(np.array([1.0])) == []
+
+
+PARTS = Components(
+    "the parts",
+    share="weight",
+    example=[{"weight": 1, "size": 2}],
+    weight=Parameter("its share", above=0, at_most=1, example=0.5),
+    size=positive("its size", example=2),
+)
+PARTS.name = "parts"
+
+
+@pytest.mark.parametrize(
+    ("rows", "path", "code"),
+    [
+        ([{"weight": 0.5, "size": 1}, {"weight": 0.5, "size": -1}], ("parts", 1, "size"), "must_be_positive"),
+        ([{"weight": 0, "size": 1}, {"weight": 1, "size": 1}], ("parts", 0, "weight"), "must_be_positive"),
+        ([{"weight": 0.5, "size": 1}, {"weight": 0.4, "size": 1}], ("parts",), "must_add_up_to_one"),
+    ],
+)
+def test_components_are_checked_part_by_part(rows: list[dict[str, float]], path: tuple[Any, ...], code: str) -> None:
+    (refusal,) = PARTS.refusals(PARTS.as_numbers(rows))
+    assert (refusal.path, refusal.code) == (path, code)
+
+
+def test_components_add_up_within_a_billionth() -> None:
+    rows = [{"weight": 0.5, "size": 1.0}, {"weight": 0.5 + 5e-10, "size": 2.0}]
+    assert PARTS.refusals(PARTS.as_numbers(rows)) == []
+
+
+def test_a_family_without_a_form_of_its_own_says_so() -> None:
+    bare: Any = Family.__new__(Family)
+    one = np.float64(1)
+    calls: list[Any] = [
+        lambda: bare.quantile(one, False),
+        bare.moments,
+        bare.most_likely,
+        bare.entropy,
+        bare.support,
+    ]
+    for call in calls:
+        with pytest.raises(NotImplementedError):
+            call()
