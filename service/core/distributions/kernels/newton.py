@@ -46,7 +46,8 @@ def newton_on_log_tail(
         strays = ~np.isfinite(new) | (new < low[active]) | (new > high[active])
         u[active] = np.where(strays, _between(low[active], high[active]), new)
         close = (np.abs(move) <= 1e-9 * np.maximum(1e-300, np.abs(new))) & (np.abs(gap) < 1e-7)
-        done = (np.abs(new - v) <= 2e-16 * np.abs(new)) | (np.abs(gap) <= 3e-16) | (close & ~strays)
+        settled = (np.abs(move) <= 2e-16 * np.abs(new)) | close
+        done = (np.abs(gap) <= 3e-16) | (settled & ~strays)
         active = active[~done]
     return u
 
