@@ -10,6 +10,8 @@ from service.core.errors import Refusal
 from service.core.parameters import Parameter
 from service.core.returns.law import HorizonLaw
 
+LARGEST = 1e6
+"""No return of one period is larger: powers of it stay within the doubles."""
 RETURN_MODELS: dict[str, type["ReturnModel"]] = {}
 """Every return model by its name, in the order of the files."""
 

@@ -10,9 +10,13 @@ from service.core.errors import Refusal
 from service.core.parameters import Limit, Sample
 from service.core.returns.law import HorizonLaw
 from service.core.returns.laws.sample import SampleLaw, sample_moments
-from service.core.returns.model import ReturnModel
+from service.core.returns.model import LARGEST, ReturnModel
 
-TOTAL_LOSS = Limit("at_least", -1)
+LIMITS = {
+    "simple": (Limit("at_least", -1), Limit("at_most", LARGEST)),
+    "continuous": (Limit("at_least", -LARGEST), Limit("at_most", 300)),
+}
+"""A total loss is the least simple return; beyond the others a square would leave the doubles."""
 
 
 class Empirical(ReturnModel):
@@ -27,21 +31,11 @@ class Empirical(ReturnModel):
 
     def refusals(self, compounding: str) -> Iterator[Refusal]:
         yield from super().refusals(compounding)
-        if compounding == "simple":
-            found = TOTAL_LOSS.refusal("observations", self.observations)
-            if found:
-                yield found
-        elif not np.isfinite(self._growth(compounding)).all():
-            at = int(np.argmax(self.observations))
-            detail = f"exp({self.observations[at]:.15g}) does not fit into double precision."
-            yield Refusal(("observations", at), "not_representable", detail, {"field": "observations"})
-
-    def _growth(self, compounding: str) -> Numbers:
-        with np.errstate(over="ignore"):
-            return np.expm1(self.observations) if compounding == "continuous" else self.observations
+        found = (limit.refusal("observations", self.observations) for limit in LIMITS.get(compounding, ()))
+        yield from (refusal for refusal in found if refusal)
 
     def moments(self) -> Moments:
         return sample_moments(self.observations)
 
     def horizon_law(self, periods: Numbers, compounding: str) -> HorizonLaw:  # noqa: ARG002 - one period alone
-        return SampleLaw(self._growth(compounding))
+        return SampleLaw(np.expm1(self.observations) if compounding == "continuous" else self.observations)

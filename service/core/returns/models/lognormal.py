@@ -1,17 +1,14 @@
 """Returns whose growth factor is lognormal."""
 
-from collections.abc import Iterator
-
 import numpy as np
 
 from service.core.arrays import NO_VALUE, Numbers
 from service.core.distributions.family import Moments
-from service.core.errors import Refusal
 from service.core.parameters import Parameter
 from service.core.returns.law import HorizonLaw
 from service.core.returns.laws.exponential_t import predictive_log_growth
 from service.core.returns.laws.lognormal import LognormalLaw
-from service.core.returns.model import ReturnModel
+from service.core.returns.model import LARGEST, ReturnModel
 
 
 class Lognormal(ReturnModel):
@@ -25,16 +22,8 @@ class Lognormal(ReturnModel):
     compoundings = ("simple",)
     divides = ("simple",)
     predictive = ("simple",)
-    expected_return = Parameter("mean return of one period", above=-1, example=0.06)
-    volatility = Parameter("standard deviation of the return of one period", at_least=0, example=0.1)
-
-    def refusals(self, compounding: str) -> Iterator[Refusal]:
-        yield from super().refusals(compounding)
-        with np.errstate(over="ignore"):
-            lost = ~np.isfinite(np.atleast_1d(self._relative_variance()))
-        if lost.any():
-            detail = "volatility is too large beside 1 + expected_return for double precision."
-            yield Refusal(("volatility",), "not_representable", detail, {"field": "volatility"})
+    expected_return = Parameter("mean return of one period", above=-1, at_most=LARGEST, example=0.06)
+    volatility = Parameter("standard deviation of the return of one period", at_least=0, at_most=LARGEST, example=0.1)
 
     def _relative_variance(self) -> Numbers:
         return (self.volatility / (1 + self.expected_return)) ** 2

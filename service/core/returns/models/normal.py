@@ -10,7 +10,7 @@ from service.core.returns.laws.exponential_t import predictive_log_growth
 from service.core.returns.laws.lognormal import LognormalLaw
 from service.core.returns.laws.normal import NormalLaw
 from service.core.returns.laws.student_t import StudentTLaw
-from service.core.returns.model import ReturnModel
+from service.core.returns.model import LARGEST, ReturnModel
 
 
 class Normal(ReturnModel):
@@ -24,8 +24,8 @@ class Normal(ReturnModel):
     divides = ("continuous",)
     predictive = ("simple", "continuous")
     normally_distributed = True
-    expected_return = Parameter("mean return of one period", example=0.06)
-    volatility = Parameter("standard deviation of the return of one period", at_least=0, example=0.1)
+    expected_return = Parameter("mean return of one period", at_least=-LARGEST, at_most=LARGEST, example=0.06)
+    volatility = Parameter("standard deviation of the return of one period", at_least=0, at_most=LARGEST, example=0.1)
 
     def moments(self) -> Moments:
         mean, deviation = np.broadcast_arrays(self.expected_return, self.volatility)

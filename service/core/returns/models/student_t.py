@@ -8,7 +8,7 @@ from service.core.parameters import Parameter
 from service.core.returns.law import HorizonLaw
 from service.core.returns.laws.exponential_t import ExponentialTLaw
 from service.core.returns.laws.student_t import StudentTLaw, scale_of_t
-from service.core.returns.model import ReturnModel
+from service.core.returns.model import LARGEST, ReturnModel
 
 
 class StudentT(ReturnModel):
@@ -19,8 +19,8 @@ class StudentT(ReturnModel):
     """
 
     name = "student_t"
-    expected_return = Parameter("mean return of one period", example=0.06)
-    volatility = Parameter("standard deviation of the return of one period", at_least=0, example=0.1)
+    expected_return = Parameter("mean return of one period", at_least=-LARGEST, at_most=LARGEST, example=0.06)
+    volatility = Parameter("standard deviation of the return of one period", at_least=0, at_most=LARGEST, example=0.1)
     degrees_of_freedom = Parameter("the fewer, the heavier the tails", above=2, at_most=1e15, example=5)
 
     def moments(self) -> Moments:
