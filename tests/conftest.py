@@ -104,8 +104,14 @@ def start_service(port: int, **variables: str) -> "subprocess.Popen[str]":
     """Start `python -m service` on a port of this machine, its settings as variables."""
     environment = {name: value for name, value in os.environ.items() if not name.startswith("SERVICE_")}
     environment |= {"SERVICE_BIND": f"127.0.0.1:{port}", "SERVICE_WORKERS": "1"} | variables
-    return subprocess.Popen([sys.executable, "-m", "service"], cwd=ROOT, env=environment, text=True,
-                            stdout=subprocess.PIPE, stderr=subprocess.STDOUT)
+    return subprocess.Popen(
+        [sys.executable, "-m", "service"],
+        cwd=ROOT,
+        env=environment,
+        text=True,
+        stdout=subprocess.PIPE,
+        stderr=subprocess.STDOUT,
+    )
 
 
 def free_port() -> int:

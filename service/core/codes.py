@@ -51,6 +51,7 @@ FAULTS = {
     "horizon_not_available": "The law of so many periods is not available for this return model.",
     "predictive_not_available": "The uncertainty of the estimates cannot be included for this return model.",
     "must_add_up_to_one": "The weights must add up to 1.",
+    "not_a_correlation_matrix": "Correlations must be symmetric, 1 on the diagonal, and without a negative eigenvalue.",
     "no_event": "An event needs a bound.",
     "bounds_do_not_go_together": "These bounds cannot describe one event.",
     "bounds_crossed": "The lower bound lies above the upper one.",
@@ -90,5 +91,12 @@ NULL_REASONS = {
 
 METHODS = {
     "closed_form": "From a formula, by elementary and special functions.",
+    "saddle_point_and_quadrature": "Saddle-point density times a quadrature of the tail, in logarithms.",
+    "newton_on_log_tail": "Newton's iteration on the logarithm of the tail.",
+    "bisection_on_exact_tail": "A search between whole numbers on the exact tail.",
+    "quadrature": "Numerical integration with a known error.",
+    "closed_form_and_quadrature": "Probabilities and quantiles from a formula, averages by numerical integration.",
+    "counting": "Observations counted; probabilities are exact fractions.",
+    "several_methods": "The portfolios' laws are computed by different methods.",
     "batch": "Each answer of the batch names its own method.",
 }

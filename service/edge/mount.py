@@ -42,7 +42,7 @@ class MountedEndpoint:
     def __init__(self, declared: Endpoint, settings: Settings, responder: Responder, problems: Problems) -> None:
         self.declared = declared
         self.path = declared.path
-        self.question = declared.question(settings.limits)  # once, not once a request
+        self.question = declared.question(settings.limits, declared.batch)  # once, not once a request
         self.query = FlatQuery(self.question) if declared.get else None
         self.max_body_bytes = settings.max_body_bytes
         self.responder = responder
@@ -73,8 +73,10 @@ class MountedEndpoint:
         """Answer the body of a POST. Raises Unreadable or ValidationError."""
         data = read(body)
         mark = fingerprint(self.path, b"\n", body)
-        if self.declared.batch and type(data) is dict and data.get("questions") is not None:
-            return write_batch(self._answer_each(ask_batch(self.question, data)), mark)
+        if self.declared.batch and type(data) is dict and "questions" in data:
+            if data["questions"] is not None:
+                return write_batch(self._answer_each(ask_batch(self.question, data)), mark)
+            del data["questions"]
         return self._answer(self.question.ask(data), mark)
 
     def _get(self, asked: Request) -> Response:

@@ -12,6 +12,7 @@ from typing import Any
 from service.schemas.limits import DEFAULT_LIMITS, Limits
 
 PREFIX = "SERVICE_"
+CONTROL_GROUPS = Path("/sys/fs/cgroup")
 
 
 class BadSetting(ValueError):
@@ -117,7 +118,7 @@ def read_settings(environment: Mapping[str, str]) -> tuple[Settings, list[str]]:
 def cores() -> int:
     """Cores that this process may use: its affinity, and the quota of its container (cgroup v2, then v1)."""
     allowed = len(os.sched_getaffinity(0))
-    for quota in (_quota_v2(Path("/sys/fs/cgroup/cpu.max")), _quota_v1(Path("/sys/fs/cgroup/cpu"))):
+    for quota in (_quota_v2(CONTROL_GROUPS / "cpu.max"), _quota_v1(CONTROL_GROUPS / "cpu")):
         if quota is not None:
             return max(1, min(allowed, math.ceil(quota)))
     return allowed

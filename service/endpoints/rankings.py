@@ -7,7 +7,7 @@ from service.core.portfolio.question import RankingQuestion as CoreQuestion
 from service.core.portfolio.ranking import rank
 from service.endpoints.declaration import endpoint
 from service.schemas.answers import Result, write_plain
-from service.schemas.cautions import beside_shortfalls
+from service.schemas.cautions import beside_shortfalls, sentence
 from service.schemas.fields import ChoiceField, GroupField, MatrixField, NumberField
 from service.schemas.floor_question import FloorQuestion, floor_of, settings_of, slips_in
 from service.schemas.portfolio import ColumnsField, PortfolioListField
@@ -93,7 +93,7 @@ def rankings(asked: Asked) -> Result:
         ),
     )
     cautions = beside_shortfalls(floor.horizon_years, losses=bool(found.shortfall.tail_losses))
-    cautions += [*ranking_cautions(found), *slips_in(asked, models)]
+    cautions += [sentence("estimates_taken_as_true"), *ranking_cautions(found), *slips_in(asked, models)]
     reason = found.confidence_reason or "not_computed"
     return Result(
         ranking_values(found, names, columns=columns is not None),

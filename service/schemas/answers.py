@@ -79,7 +79,7 @@ class Single:
 
 @dataclass(frozen=True, slots=True)
 class Ranks:
-    """Ranks from 1; 0 stands for none and is written null."""
+    """A rank or an array of them, from 1; 0 stands for none and is written null."""
 
     values: Any
 
@@ -114,7 +114,11 @@ class Writer:
             return value.tolist()  # counts, words, truths
         return self._number(value, pointer) if self.length is None else self._array(value, pointer, self.length)
 
-    def _ranks(self, values: Any, pointer: str) -> list[int | None]:
+    def _ranks(self, values: Any, pointer: str) -> Any:
+        if type(values) is int:
+            if values == 0:
+                self.null_reasons.append({"pointer": pointer, "reason": "no_rank"})
+            return values or None
         self.null_reasons += [
             {"pointer": f"{pointer}/{at}", "reason": "no_rank"} for at in np.flatnonzero(values == 0).tolist()
         ]

@@ -48,8 +48,9 @@ class Question(Schema):
     """Other fields that go together with one way of asking alone."""
     error_messages: ClassVar[dict[str, str]] = {"unknown": STRANGER}  # type: ignore[misc]  # as in marshmallow
 
-    def __init__(self, limits: Limits) -> None:
+    def __init__(self, limits: Limits, batch: bool) -> None:
         self.service_limits = limits
+        self.batch = batch
         super().__init__()
 
     def on_bind_field(self, field_name: str, field_obj: Any) -> None:  # noqa: ARG002
@@ -67,7 +68,7 @@ class Question(Schema):
 
     def _stranger(self, name: str, data: Mapping[str, Any]) -> Fault:
         missing = [n for n, f in self.fields.items() if f.required and data.get(n) is None]
-        return unknown(name, [*self.fields, "questions"], missing)
+        return unknown(name, [*self.fields, *(["questions"] if self.batch else [])], missing)
 
     def ask(self, data: Any) -> Asked:
         """Read one question. Raises ValidationError with every fault."""

@@ -89,7 +89,7 @@ def ranking_values(found: Ranking, names: tuple[str | None, ...], *, columns: bo
             "criterion": found.criterion,
             "ranking": [
                 {
-                    "rank": Plain(row["rank"] or None),
+                    "rank": Ranks(row["rank"]),
                     "index": row["index"],
                     "name": Plain(name),
                     **{n: v for n, v in row.items() if n not in ("rank", "index")},

@@ -39,11 +39,15 @@ def main() -> int:
     rows = [("one question, service", ours), ("bare Flask echo", theirs)]
     print(f"{'':28}{'requests/s':>12}{'cpu µs':>10}{'p99 ms':>10}")
     for name, rounds in rows:
-        print(f"{name:28}{statistics.median(r.rate for r in rounds):12.0f}"
-              f"{statistics.median(r.cpu_seconds / r.requests for r in rounds) * 1e6:10.0f}"
-              f"{statistics.median(r.p99_seconds for r in rounds) * 1e3:10.2f}")
-    print(f"of the echo: {by_rate:.3f} by rate (at least {LEAST_RATIO}), {by_cpu:.3f} by the worker's CPU time, "
-          f"p99 {tails:.2f} times; {ROUNDS} paired rounds of {REQUESTS} requests on {CONNECTIONS} connections")
+        print(
+            f"{name:28}{statistics.median(r.rate for r in rounds):12.0f}"
+            f"{statistics.median(r.cpu_seconds / r.requests for r in rounds) * 1e6:10.0f}"
+            f"{statistics.median(r.p99_seconds for r in rounds) * 1e3:10.2f}"
+        )
+    print(
+        f"of the echo: {by_rate:.3f} by rate (at least {LEAST_RATIO}), {by_cpu:.3f} by the worker's CPU time, "
+        f"p99 {tails:.2f} times; {ROUNDS} paired rounds of {REQUESTS} requests on {CONNECTIONS} connections"
+    )
     return 0 if by_rate >= LEAST_RATIO else 1
 
 

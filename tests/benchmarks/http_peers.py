@@ -39,8 +39,21 @@ def echo_peer() -> Iterator[Peer]:
 @contextmanager
 def _running(app: str, path: str) -> Iterator[Peer]:
     port = _free_port()
-    command = [sys.executable, "-m", "gunicorn", "--bind", f"127.0.0.1:{port}", "--workers", "1", "--preload",
-               "--worker-tmp-dir", "/dev/shm", "--log-level", "error", app]  # noqa: S108 - a file system in memory
+    command = [
+        sys.executable,
+        "-m",
+        "gunicorn",
+        "--bind",
+        f"127.0.0.1:{port}",
+        "--workers",
+        "1",
+        "--preload",
+        "--worker-tmp-dir",
+        "/dev/shm",  # noqa: S108 - a file system in memory
+        "--log-level",
+        "error",
+        app,
+    ]
     process = subprocess.Popen(command, env=os.environ | {"OPENBLAS_NUM_THREADS": "1"})
     try:
         _await(port)

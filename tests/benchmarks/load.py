@@ -1,4 +1,4 @@
-"""A load that costs little itself: raw sockets, a fixed number of requests, one connection each as sync workers serve."""
+"""A load that costs little itself: raw sockets, so many requests, one connection each as sync workers serve."""
 
 import os
 import socket
@@ -29,8 +29,10 @@ class Round:
 
 def run_round(peer: Peer, body: bytes, requests: int, connections: int) -> Round:
     """Send `requests` questions over `connections` threads and check that each is answered 200."""
-    head = (f"POST {peer.path} HTTP/1.1\r\nHost: localhost\r\nContent-Type: application/json\r\n"
-            f"Content-Length: {len(body)}\r\n\r\n").encode()
+    head = (
+        f"POST {peer.path} HTTP/1.1\r\nHost: localhost\r\nContent-Type: application/json\r\n"
+        f"Content-Length: {len(body)}\r\n\r\n"
+    ).encode()
     times: list[float] = []
     share = requests // connections
     threads = [threading.Thread(target=_ask, args=(peer.port, head + body, share, times)) for _ in range(connections)]

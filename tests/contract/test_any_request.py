@@ -1,5 +1,7 @@
 """Whatever a client sends, the answer is one that the document describes: never a 500, never a shape of its own."""
 
+from typing import Any
+
 import schemathesis
 from hypothesis import HealthCheck, settings
 from schemathesis.checks import not_a_server_error
@@ -30,6 +32,6 @@ CHECKS = [
 
 @schema.parametrize()
 @settings(max_examples=60, deadline=None, suppress_health_check=list(HealthCheck), derandomize=True)
-def test_every_operation_answers_as_described(case: schemathesis.Case) -> None:
+def test_every_operation_answers_as_described(case: Any) -> None:
     # what fits the schema may still not fit (lengths that differ), so no check asks for success
     case.call_and_validate(checks=CHECKS)

@@ -18,9 +18,7 @@ from tests.conftest import Asker
 
 COMMITTED = Path(__file__).parent.parent.parent / "openapi.yaml"
 DOCUMENT: dict[str, Any] = yaml.load(COMMITTED.read_text(), Loader=yaml.CSafeLoader)
-OPERATIONS = {
-    (verb, path): operation for path, verbs in DOCUMENT["paths"].items() for verb, operation in verbs.items()
-}
+OPERATIONS = {(verb, path): operation for path, verbs in DOCUMENT["paths"].items() for verb, operation in verbs.items()}
 
 
 def test_the_committed_document_is_in_step() -> None:
@@ -70,7 +68,9 @@ def test_every_operation_describes_its_errors(verb: str, path: str) -> None:
 
 
 EXAMPLES = [
-    (path, name) for (verb, path), operation in OPERATIONS.items() if verb == "post"
+    (path, name)
+    for (verb, path), operation in OPERATIONS.items()
+    if verb == "post"
     for name in operation["requestBody"]["content"]["application/json"]["examples"]
 ]
 
@@ -112,7 +112,7 @@ def test_requests_are_closed_and_answers_open() -> None:
     for name, component in DOCUMENT["components"]["schemas"].items():
         if component.get("type") == "object":
             is_request = name.endswith(("Question", "Batch", "Distribution", "Returns", "Columns", "Portfolio"))
-            is_request = is_request or "Distribution" in name and "By" in name
+            is_request = is_request or ("Distribution" in name and "By" in name)
             assert (component.get("additionalProperties") is False) == is_request, name
 
 

@@ -15,8 +15,10 @@ def faults(ask: Asker, query: str) -> dict[str, str]:
 
 
 def test_a_query_answers_as_the_body_that_it_stands_for(ask: Asker) -> None:
-    body = {"distribution": {"family": "normal", "mean": [10, 11], "standard_deviation": 2},
-            "event": {"at_least": 8, "below": [11, 12]}}
+    body = {
+        "distribution": {"family": "normal", "mean": [10, 11], "standard_deviation": 2},
+        "event": {"at_least": 8, "below": [11, 12]},
+    }
     by_get = ask.get(f"{PATH}?family=normal&mean=10,11&standard_deviation=2&at_least=8&below=11,12").get_json()
     by_post = ask.answer(PATH, body)
     assert by_get | {"basis": None} == by_post | {"basis": None}

@@ -1,0 +1,78 @@
+"""What README shows is what the service does."""
+
+import json
+import re
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from service.edge.settings import Settings, setting_names
+from tests.conftest import Asker
+
+README = (Path(__file__).parent.parent.parent / "README.md").read_text()
+CALLS = re.findall(
+    r"curl -s '?http://127\.0\.0\.1:8000([^\s']+)'?(?: -H 'Content-Type: application/json' -d '(.*?)')?\n```",
+    README,
+    re.DOTALL,
+)
+
+
+def assert_shown(found: Any, shown: Any) -> None:
+    """README shows part of an answer: of objects some members, of cautions some, of figures six digits."""
+    if isinstance(shown, dict):
+        for name, inner in shown.items():
+            if name == "cautions":
+                assert [c for c in inner if not any(c.items() <= each.items() for each in found[name])] == []
+            else:
+                assert_shown(found[name], inner)
+    elif isinstance(shown, list):
+        assert len(found) == len(shown)
+        for one, inner in zip(found, shown, strict=True):
+            assert_shown(one, inner)
+    elif isinstance(shown, float):
+        assert found == pytest.approx(shown, rel=1e-5)
+    else:
+        assert found == shown
+
+
+def test_there_are_calls_to_check() -> None:
+    assert len(CALLS) >= 2
+
+
+@pytest.mark.parametrize(("address", "body"), CALLS)
+def test_every_call_answers(ask: Asker, address: str, body: str) -> None:
+    if body:
+        ask.answer(address, json.loads(body))
+    else:
+        assert ask.get(address).status_code == 200
+
+
+def test_the_first_answer_is_as_shown(ask: Asker) -> None:
+    address, body = CALLS[0]
+    shown = json.loads(re.findall(r"```json\n(.*?)\n```", README, re.DOTALL)[0])
+    assert_shown(ask.answer(address, json.loads(body)), shown)
+
+
+def test_the_problem_is_as_shown(ask: Asker) -> None:
+    shown = json.loads(re.findall(r"```json\n(.*?)\n```", README, re.DOTALL)[1])
+    returns = {"model": "normal", "expected_retrun": 0.05, "volatility": -0.08}
+    found = ask.client.post("/v1/shortfalls", json={"portfolio": {"returns": returns}, "threshold": 0.02}).get_json()
+    own = {"instance": None, "request_id": None}
+    assert found | own == shown | own
+
+
+def test_the_fingerprint_call_names_the_request(ask: Asker) -> None:
+    path, body = re.search(r"printf '(/v1/\w+)\\n(.*?)' \| sha256sum", README).groups()  # type: ignore[union-attr]
+    response = ask.client.post(path, data=body, content_type="application/json")
+    assert response.status_code == 200
+
+
+def test_every_setting_is_described_with_its_default() -> None:
+    rows = dict(re.findall(r"\| `(SERVICE_\w+)` \| `?([^|`]+)`? \|", README))
+    assert list(rows) == setting_names()
+    defaults = Settings()
+    for name, shown in rows.items():
+        value = getattr(defaults, name.removeprefix("SERVICE_").lower())
+        written = "on" if value is True else "none" if value == () else str(value)
+        assert shown.strip() == written

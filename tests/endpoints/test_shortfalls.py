@@ -1,0 +1,195 @@
+"""POST /v1/shortfalls: forms, defaults, cautions, faults. The figures themselves are tested in tests/core/portfolio."""
+
+from typing import Any
+
+import numpy as np
+import pytest
+
+from tests.conftest import Asker
+
+PATH = "/v1/shortfalls"
+BALANCED: dict[str, Any] = {
+    "name": "Balanced",
+    "returns": {"model": "normal", "expected_return": 0.06, "volatility": 0.1},
+}
+
+
+def test_one_floor_answers_every_figure(ask: Asker) -> None:
+    answer = ask.answer(PATH, {"portfolio": BALANCED, "threshold": 0.02})
+    assert answer["form"] == "number"
+    assert answer["shortfall_probability"] == pytest.approx(0.34457825839, rel=1e-10)
+    assert answer["frequencies"] == {"shortfall_probability": {"count": 34, "out_of": 100, "bound": "about"}}
+    assert answer["safety_first_ratio"] == pytest.approx(0.4)
+    assert answer["threshold_at_probability"]["probability"] == 0.05
+    assert [loss["confidence_level"] for loss in answer["tail_losses"]] == [0.95, 0.99]
+    assert answer["null_reasons"] == [{"pointer": "/log_safety_first_ratio", "reason": "no_value"}]
+    assert "outcomes" not in answer
+
+
+def test_a_list_of_floors_answers_arrays(ask: Asker) -> None:
+    floors = [-0.1, 0.0, 0.02]
+    answer = ask.answer(PATH, {"portfolio": BALANCED, "threshold": floors, "equally_likely_outcomes": 4})
+    assert (answer["form"], answer["length"]) == ("list", 3)
+    alone = [ask.answer(PATH, {"portfolio": BALANCED, "threshold": floor}) for floor in floors]
+    assert answer["shortfall_probability"] == [each["shortfall_probability"] for each in alone]
+    assert answer["lower_partial_moments"]["order_2"] == [each["lower_partial_moments"]["order_2"] for each in alone]
+    assert answer["tail_losses"][0]["value_at_risk"] == [alone[0]["tail_losses"][0]["value_at_risk"]] * 3
+    assert answer["tail_losses"][0]["confidence_level"] == 0.95
+    counts = [each["frequencies"]["shortfall_probability"]["count"] for each in alone]
+    assert answer["frequencies"]["shortfall_probability"] == {"count": counts, "out_of": 100, "bound": ["about"] * 3}
+    assert answer["log_safety_first_ratio"] == [None] * 3
+    assert answer["null_reasons"] == [{"pointer": "/log_safety_first_ratio", "reason": "no_value"}]
+    # the outcomes are the same for every floor
+    assert (
+        answer["outcomes"]
+        == ask.answer(PATH, {"portfolio": BALANCED, "threshold": 0, "equally_likely_outcomes": 4})["outcomes"]
+    )
+
+
+def test_frequencies_of_different_sizes_are_listed(ask: Asker) -> None:
+    answer = ask.answer(PATH, {"portfolio": BALANCED, "threshold": [-0.3, 0.02]})
+    assert answer["frequencies"]["shortfall_probability"]["out_of"] == [100_000, 100]
+
+
+def test_equally_likely_outcomes_are_listed_worst_first(ask: Asker) -> None:
+    answer = ask.answer(PATH, {"portfolio": BALANCED, "threshold": 0.02, "equally_likely_outcomes": 10})
+    assert answer["outcomes"] == sorted(answer["outcomes"])
+    assert len(answer["outcomes"]) == 10
+    # the fifth and the sixth lie about the mean of a symmetric law
+    assert sum(answer["outcomes"][4:6]) / 2 == pytest.approx(0.06)
+
+
+def test_cautions_stand_beside_the_figures(ask: Asker) -> None:
+    codes = [c["code"] for c in ask.answer(PATH, {"portfolio": BALANCED, "threshold": 0.02})["cautions"]]
+    assert codes == [
+        "model_not_forecast",
+        "chance_not_size",
+        "gap_over_all_outcomes",
+        "loss_from_today_only",
+        "not_the_most_you_can_lose",
+    ]
+    ten_years = {
+        "portfolio": {"returns": {"model": "lognormal", "expected_return": 0.05, "volatility": 0.12}},
+        "threshold": 0.02,
+        "horizon_years": 10,
+    }
+    assert "longer_is_not_safer" in [c["code"] for c in ask.answer(PATH, ten_years)["cautions"]]
+
+
+def test_a_floor_and_a_volatility_in_per_cent_are_answered_with_a_caution(ask: Asker) -> None:
+    returns = {"model": "normal", "expected_return": 0.06, "volatility": 10}
+    found = [
+        c
+        for c in ask.answer(PATH, {"portfolio": {"returns": returns}, "threshold": 2})["cautions"]
+        if c["code"] == "looks_like_percent"
+    ]
+    assert [c["pointer"] for c in found] == ["/threshold", "/portfolio/returns/volatility"]
+
+
+def test_the_horizon_of_laws_that_divide_is_free(ask: Asker) -> None:
+    returns = {"model": "lognormal", "expected_return": 0.05, "volatility": 0.12}
+    answer = ask.answer(PATH, {"portfolio": {"returns": returns}, "threshold": 0.02, "horizon_years": 2.5})
+    assert answer["expected_return"] == pytest.approx(1.05**2.5 - 1, rel=1e-13)
+
+
+def test_a_period_of_its_own_length(ask: Asker) -> None:
+    observations = [0.01, -0.02, 0.003, 0.0, -0.02]
+    returns = {"model": "empirical", "observations": observations, "period": "day"}
+    question = {"portfolio": {"returns": returns}, "threshold": 0, "threshold_basis": "over_horizon"}
+    answer = ask.answer(PATH, question | {"horizon_years": 1 / 252})
+    assert answer["shortfall_probability"] == pytest.approx(np.mean(np.array(observations) < 0))
+    assert answer["basis"]["method"] == "counting"
+    # a year is 252 such days, which this version does not compound
+    assert ask.faults(PATH, question) == {"/horizon_years": "horizon_not_available"}
+
+
+@pytest.mark.parametrize(
+    ("question", "expected"),
+    [
+        ({}, {"/portfolio": "required", "/threshold": "required"}),
+        ({"portfolio": {}, "threshold": 0}, {"/portfolio/returns": "required"}),
+        (
+            {"portfolio": {"returns": {"model": "normal"}, "nme": "x"}, "threshold": 0},
+            {
+                "/portfolio/nme": "unknown_field",
+                "/portfolio/returns/expected_return": "required",
+                "/portfolio/returns/volatility": "required",
+            },
+        ),
+        ({"portfolio": {"returns": {"model": "norml"}}, "threshold": 0}, {"/portfolio/returns/model": "unknown_model"}),
+        (
+            {"portfolio": {"returns": BALANCED["returns"] | {"volatility": -0.06}}, "threshold": 0},
+            {"/portfolio/returns/volatility": "must_not_be_negative"},
+        ),
+        (
+            {"portfolio": {"returns": BALANCED["returns"] | {"volatility": [0.1]}}, "threshold": 0},
+            {"/portfolio/returns/volatility": "no_arrays"},
+        ),
+        (
+            {"portfolio": {"returns": BALANCED["returns"] | {"period": "fortnight"}}, "threshold": 0},
+            {"/portfolio/returns/period": "unknown_choice"},
+        ),
+        (
+            {
+                "portfolio": {"returns": BALANCED["returns"] | {"compounding": "continuous", "model": "lognormal"}},
+                "threshold": 0,
+            },
+            {"/portfolio/returns/compounding": "compounding_not_available"},
+        ),
+        (
+            {"portfolio": {"returns": {"model": "empirical", "observations": [0.1, -1.5]}}, "threshold": 0},
+            {"/portfolio/returns/observations/1": "must_be_at_least"},
+        ),
+        ({"portfolio": {"name": 5, "returns": BALANCED["returns"]}, "threshold": 0}, {"/portfolio/name": "not_text"}),
+        (
+            {"portfolio": {"name": "n" * 201, "returns": BALANCED["returns"]}, "threshold": 0},
+            {"/portfolio/name": "too_long"},
+        ),
+        ({"portfolio": BALANCED, "threshold": -1}, {"/threshold": "must_be_above"}),
+        ({"portfolio": BALANCED, "threshold": [0, -2]}, {"/threshold/1": "must_be_above"}),
+        ({"portfolio": BALANCED, "threshold": 0, "horizon_years": 0}, {"/horizon_years": "must_be_positive"}),
+        ({"portfolio": BALANCED, "threshold": 0, "horizon_years": 2}, {"/horizon_years": "horizon_not_available"}),
+        ({"portfolio": BALANCED, "threshold": 0, "horizon_years": 1.5}, {"/horizon_years": "horizon_not_divisible"}),
+        (
+            {"portfolio": BALANCED, "threshold": 0, "confidence_levels": [0.9, 1]},
+            {"/confidence_levels/1": "must_be_below"},
+        ),
+        ({"portfolio": BALANCED, "threshold": 0, "confidence_levels": 0.9}, {"/confidence_levels": "not_an_array"}),
+        ({"portfolio": BALANCED, "threshold": 0, "confidence_levels": [0.9] * 21}, {"/confidence_levels": "too_many"}),
+        (
+            {"portfolio": BALANCED, "threshold": 0, "quantile_probability": 0},
+            {"/quantile_probability": "must_be_positive"},
+        ),
+        (
+            {"portfolio": BALANCED, "threshold": 0, "equally_likely_outcomes": 2.5},
+            {"/equally_likely_outcomes": "must_be_whole"},
+        ),
+        (
+            {"portfolio": BALANCED, "threshold": 0, "parameter_uncertainty": "predictive"},
+            {"/portfolio/returns/sample_size": "required"},
+        ),
+        ({"portfolio": BALANCED, "threshold": 0, "assets": {}}, {"/assets": "unknown_field"}),
+    ],
+)
+def test_what_does_not_fit_is_named_by_pointer_and_code(ask: Asker, question: object, expected: dict[str, str]) -> None:
+    assert ask.faults(PATH, question) == expected
+
+
+def test_the_words_of_a_fault_say_what_to_do(ask: Asker) -> None:
+    returns = {"model": "normal", "expected_retrun": 0.06, "volatility": -0.06}
+    body = ask.client.post(PATH, json={"portfolio": {"returns": returns}, "threshold": 0}).get_json()
+    words = {fault["pointer"].rsplit("/", 1)[1]: fault["detail"] for fault in body["errors"]}
+    assert words == {
+        "volatility": "volatility must be 0 or more; it is -0.06.",
+        "expected_retrun": "There is no field expected_retrun here; expected_return is missing.",
+        "expected_return": "expected_return is needed by normal.",
+    }
+    assert body["detail"] == "3 faults in the body; each is listed under errors."
+
+
+def test_a_batch_of_shortfalls(ask: Asker) -> None:
+    questions = [{"portfolio": BALANCED, "threshold": floor} for floor in (0.0, 0.02)]
+    batch = ask.answer(PATH, {"questions": questions})
+    assert batch["answers"][1]["shortfall_probability"] == pytest.approx(0.34457825839, rel=1e-10)
+    questions[1] = questions[1] | {"horizon_years": 2}
+    assert ask.faults(PATH, {"questions": questions}) == {"/questions/1/horizon_years": "horizon_not_available"}
