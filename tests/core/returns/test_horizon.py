@@ -10,10 +10,10 @@ from service.core.errors import DoesNotFit, Refusal
 from service.core.returns.horizon import placed
 from tests.core.returns.build import law, returns
 
-LOGNORMAL = {"model": "lognormal", "expected_return": 0.05, "volatility": 0.1}
-NORMAL = {"model": "normal", "expected_return": 0.05, "volatility": 0.1}
-OBSERVED = {"model": "empirical", "observations": [0.1, 0.2]}
-STUDENT = {"model": "student_t", "expected_return": 0.05, "volatility": 0.1, "degrees_of_freedom": 4}
+LOGNORMAL: dict[str, Any] = {"model": "lognormal", "expected_return": 0.05, "volatility": 0.1}
+NORMAL: dict[str, Any] = {"model": "normal", "expected_return": 0.05, "volatility": 0.1}
+OBSERVED: dict[str, Any] = {"model": "empirical", "observations": [0.1, 0.2]}
+STUDENT: dict[str, Any] = {"model": "student_t", "expected_return": 0.05, "volatility": 0.1, "degrees_of_freedom": 4}
 
 
 def refusal(**given: Any) -> Refusal:

@@ -1,12 +1,14 @@
 """Volatility 0 is a certainty, in every law alike."""
 
+from typing import Any
+
 import numpy as np
 import pytest
 
 from service.core.arrays import number
 from tests.core.returns.build import law
 
-CERTAIN = {
+CERTAIN: dict[str, dict[str, Any]] = {
     "normal": {"model": "normal"},
     "normal continuous": {"model": "normal", "compounding": "continuous"},
     "lognormal": {"model": "lognormal"},
@@ -16,9 +18,9 @@ CERTAIN = {
 
 
 @pytest.mark.parametrize("given", CERTAIN.values(), ids=CERTAIN.keys())
-def test_everything_about_a_certain_return(given: dict[str, object]) -> None:
+def test_everything_about_a_certain_return(given: dict[str, Any]) -> None:
     point = float(np.expm1(0.03)) if given.get("compounding") else 0.03
-    found = law(**given, expected_return=0.03, volatility=0)  # type: ignore[arg-type]  # names are those of the builder
+    found = law(**given, expected_return=0.03, volatility=0)
     thresholds = np.array([-0.5, point, 0.05])
     assert found.probability_below(thresholds).tolist() == [0, 0, 1]
     assert found.probability_at_most(thresholds).tolist() == [0, 1, 1]
@@ -39,15 +41,15 @@ def test_everything_about_a_certain_return(given: dict[str, object]) -> None:
 
 @pytest.mark.parametrize("model", ["normal", "student_t"])
 def test_a_certain_total_loss_has_no_log_growth(model: str) -> None:
-    extra = {"degrees_of_freedom": 4} if model == "student_t" else {}
+    extra: dict[str, Any] = {"degrees_of_freedom": 4} if model == "student_t" else {}
     found = law(model, expected_return=-1, volatility=0, **extra)
     assert found.total_loss_probability() == 1
     assert np.isnan(found.log_growth().mean)
 
 
 @pytest.mark.parametrize("given", CERTAIN.values(), ids=CERTAIN.keys())
-def test_certain_and_uncertain_portfolios_side_by_side(given: dict[str, object]) -> None:
-    found = law(**given, expected_return=[0.03, 0.03], volatility=[0, 0.1])  # type: ignore[arg-type]  # as above
+def test_certain_and_uncertain_portfolios_side_by_side(given: dict[str, Any]) -> None:
+    found = law(**given, expected_return=[0.03, 0.03], volatility=[0, 0.1])
     below = found.probability_below(number(0.01))
     assert below[0] == 0
     assert 0 < below[1] < 1
