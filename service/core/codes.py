@@ -100,3 +100,9 @@ METHODS = {
     "several_methods": "The portfolios' laws are computed by different methods.",
     "batch": "Each answer of the batch names its own method.",
 }
+
+
+def require_listed(fault: str) -> None:
+    """Raise LookupError for a fault code that clients could not look up."""
+    if fault not in FAULTS:
+        raise LookupError(f"the fault code {fault} is not listed in service.core.codes")

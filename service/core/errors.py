@@ -4,7 +4,7 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 from typing import Any
 
-from service.core.codes import FAULTS
+from service.core.codes import require_listed
 
 
 @dataclass(frozen=True, slots=True)
@@ -21,8 +21,7 @@ class Refusal:
     params: Mapping[str, Any] = field(default_factory=dict)
 
     def __post_init__(self) -> None:
-        if self.code not in FAULTS:
-            raise LookupError(f"the fault code {self.code} is not listed in service.core.codes")
+        require_listed(self.code)
 
 
 class DoesNotFit(ValueError):

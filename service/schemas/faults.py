@@ -7,7 +7,7 @@ from typing import Any
 
 from marshmallow import ValidationError
 
-from service.core.codes import FAULTS
+from service.core.codes import require_listed
 from service.core.errors import DoesNotFit
 
 WHOLE = "_schema"
@@ -23,8 +23,7 @@ class Fault:
     params: Mapping[str, Any] = field(default_factory=dict)
 
     def __post_init__(self) -> None:
-        if self.code not in FAULTS:
-            raise LookupError(f"the fault code {self.code} is not listed in service.core.codes")
+        require_listed(self.code)
 
 
 def refuse(code: str, detail: str, **params: Any) -> ValidationError:
