@@ -64,11 +64,13 @@ class Comparison:
         self.kinds = np.full(law.count, UNRELATED)
         self.parameters = np.full((4, law.count), NO_VALUE)
         self.atoms: list[Atoms | None] = [None] * law.count
+        self.has_atoms = np.full(law.count, False)
         names: dict[str, int] = {}
         for part, positions in law.parts:
             ordering = part.ordering()
             if ordering is None:
                 self.atoms[int(positions[0])] = part.atoms()
+                self.has_atoms[positions] = True
                 continue
             self.kinds[positions] = names.setdefault(ordering.kind, len(names))
             self.parameters[:, positions] = stacked(ordering[1:])
@@ -82,11 +84,13 @@ class Comparison:
         orders = np.where(same, _by_parameters(location, scale, level, a, others), 0)
         if self.grid is None:
             return orders, same
-        numerical = np.where(same, 0, _on_grid(self.grid, self.means, a, others))
-        atoms = self.atoms[a]
-        both_atoms = np.array([atoms is not None and self.atoms[b] is not None for b in others], np.bool_)
-        for i in np.flatnonzero(both_atoms & (numerical > 0)):
-            numerical[i] = _by_atoms(atoms, self.atoms[others[i]])
+        jumps = self.has_atoms[others] != self.has_atoms[a]
+        numerical = np.where(same, 0, _on_grid(self.grid, self.means, a, others, jumps))
+        atoms, both_atoms = self.atoms[a], np.full(others.size, False)
+        for i, other in enumerate(self.atoms[b] for b in others):
+            if atoms is not None and other is not None:
+                both_atoms[i] = True
+                numerical[i] = _by_atoms(atoms, other) if numerical[i] else 0
         return np.where(same, orders, numerical), same | both_atoms
 
 
@@ -112,9 +116,15 @@ def _grid(law: CollectedLaw) -> _Grid:
     return _Grid(law.quantile(probabilities).T.copy(), law.expected_shortfall(probabilities).T.copy())
 
 
-def _on_grid(grid: _Grid, means: Numbers, a: int, others: Positions) -> Orders:
-    """Second order by the mean of the worst outcomes, which is the integral of the quantile function."""
-    first = _above(grid.quantiles[a], grid.quantiles[others])
+def _on_grid(grid: _Grid, means: Numbers, a: int, others: Positions, jumps: Truths) -> Orders:
+    """Second order by the mean of the worst outcomes, which is the integral of the quantile function.
+
+    Where one of the two laws `jumps` and the other does not, first order must hold from each probability to the next,
+    so that no jump between them goes unseen.
+    """
+    quantiles = grid.quantiles[others]
+    smooth = _above(grid.quantiles[a], quantiles)
+    first = np.where(jumps, _above(grid.quantiles[a][:-1], quantiles[:, 1:]), smooth)
     second = _above(-grid.mean_losses[a], -grid.mean_losses[others])
     second &= np.isfinite(means[a]) & np.isfinite(means[others]) & (means[a] >= means[others] - NOTICEABLE)
     return np.where(first, FIRST, np.where(second, SECOND, 0))
@@ -127,10 +137,8 @@ def _above(one: Numbers, others: Numbers) -> Truths:
     return np.asarray((difference >= -noticeable).all(axis=1) & (difference > noticeable).any(axis=1))
 
 
-def _by_atoms(a: Atoms | None, b: Atoms | None) -> int:
+def _by_atoms(a: Atoms, b: Atoms) -> int:
     """Compare two laws of atoms on the pieces on which both quantile functions are constant."""
-    if a is None or b is None:
-        raise TypeError("both laws must have atoms")
     ends = np.union1d(a.cumulative, b.cumulative)
     widths = np.diff(ends, prepend=0.0)
     pieces = widths > NOTICEABLE

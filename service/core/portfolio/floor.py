@@ -36,7 +36,10 @@ class Floor:
 
 
 def per_year(over_horizon: Numbers, horizon_years: float) -> Numbers:
-    """(1 + R)^(1/horizon_years) - 1; nan below a total loss, where no yearly return leads to R."""
+    """(1 + R)^(1/horizon_years) - 1; nan below a total loss, where no yearly return leads to R.
+
+    Callers silence numpy's warnings.
+    """
     if horizon_years == 1:
         return over_horizon
     possible = over_horizon >= -1
