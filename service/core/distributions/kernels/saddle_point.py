@@ -1,7 +1,7 @@
 """Saddle-point forms of masses and densities (Loader 2000), in which no large terms cancel."""
 
 import numpy as np
-from scipy.special import gammaln
+from scipy.special import digamma, gammaln
 
 from service.core.arrays import Numbers
 from service.core.distributions.kernels.elementary import LOG_2PI, log1p_minus_x, two_product
@@ -71,3 +71,20 @@ def log_binomial_mass(k: Numbers, n: Numbers, p: Numbers, q: Numbers) -> Numbers
     # nothing hit: q^n; nothing missed: p^n, which is 1 for n = 0
     value = np.where(misses == 0, n * np.log(np.where(n > 0, s, 1)), value)
     return np.where(hits == 0, n * np.log1p(-s), value)[()]
+
+
+DIGAMMA_SERIES = (1 / 12, -1 / 120, 1 / 252, -1 / 240, 1 / 132, -691 / 32760, 1 / 12, -3617 / 8160)
+"""Coefficients of 1/z^2, 1/z^4, ... (Abramowitz & Stegun 6.3.18)."""
+
+
+def digamma_error(z: Numbers) -> Numbers:
+    """Give log z - 1/(2 z) - psi(z) for z > 0: eight terms of its series from 12, plainly below.
+
+    Entropies written with it and with `stirling_error` have no large terms that cancel. Absolute error 1e-17 from 12,
+    eps (1 + 1/z) below.
+    """
+    square = 1 / np.square(np.maximum(z, SERIES_FROM))
+    total = square * 0
+    for coefficient in DIGAMMA_SERIES[::-1]:
+        total = (total + coefficient) * square
+    return np.where(z >= SERIES_FROM, total, np.log(z) - 0.5 / z - digamma(z))[()]
