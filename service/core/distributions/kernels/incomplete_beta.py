@@ -7,7 +7,7 @@ from service.core.arrays import Numbers, flat
 from service.core.distributions.kernels.elementary import LOG_2PI, expm1_minus_x, log1p_minus_x, two_product
 from service.core.distributions.kernels.logarithms import log_complement
 from service.core.distributions.kernels.quadrature import FINE, MEDIUM, Rule
-from service.core.distributions.kernels.saddle_point import deviance, stirling_error
+from service.core.distributions.kernels.saddle_point import deviance, digamma_error, stirling_error
 
 TINY = 1e-290
 MOST_TERMS = 3000
@@ -142,3 +142,27 @@ def _log_fraction(a: Numbers, b: Numbers, x: Numbers) -> Numbers:
 
 def _not_zero(value: Numbers) -> Numbers:
     return np.where(np.abs(value) < 1e-300, 1e-300, value)
+
+
+def _stirling_sum(a: Numbers, b: Numbers) -> Numbers:
+    return stirling_error(a) + stirling_error(b) - stirling_error(a + b)
+
+
+def beta_entropy(a: Numbers, b: Numbers) -> Numbers:
+    """Entropy of the beta law, in nats: log B - (a - 1) psi(a) - (b - 1) psi(b) + (a + b - 2) psi(a + b).
+
+    Written by the errors of Stirling's formulas, as the terms themselves cancel for large a and b. Error 1e-15 (1 + 1/a
+    + 1/b).
+    """
+    n = a + b
+    powers = 0.5 * (np.log(a / n) + np.log(b / n) - np.log(n) + LOG_2PI + 1) - 0.5 / a - 0.5 / b + 1 / n
+    rest = (a - 1) * digamma_error(a) + (b - 1) * digamma_error(b) - (n - 2) * digamma_error(n)
+    return powers + rest + _stirling_sum(a, b)
+
+
+def odds_entropy(a: Numbers, b: Numbers) -> Numbers:
+    """Entropy of x/(1 - x) under the beta law, in nats; written as in `beta_entropy`."""
+    n = a + b
+    powers = 1.5 * np.log(n / b) + 0.5 * (np.log(a / n) - np.log(n) + LOG_2PI + 1)
+    rest = (a - 1) * digamma_error(a) + (b + 1) * digamma_error(b) - n * digamma_error(n)
+    return powers + 0.5 / b - 0.5 / a + rest + _stirling_sum(a, b)
