@@ -62,7 +62,7 @@ def numbers(parameter: Parameter) -> st.SearchStrategy[float]:
     """Numbers from a third of the example to three times it and beside it, within the limits."""
     reach = max(abs(parameter.example), 0.1)
     near = st.floats(0.3, 3).map(lambda factor: factor * parameter.example)
-    beside = st.floats(-1, 1).map(lambda shift: parameter.example + shift * reach)
+    beside = st.floats(-0.9, 1).map(lambda shift: parameter.example + shift * reach)
     either = (near | beside).map(float if not parameter.whole else lambda value: float(round(value)))
     return either.filter(lambda value: not parameter.refusals(value))
 

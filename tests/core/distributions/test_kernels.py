@@ -10,7 +10,7 @@ from service.core.arrays import number
 from service.core.distributions.kernels.elementary import expm1_minus_x, log1p_minus_x, two_product
 from service.core.distributions.kernels.incomplete_beta import beta_offset, log_a_beta, log_beta_tails
 from service.core.distributions.kernels.incomplete_gamma import log_gamma_tails
-from service.core.distributions.kernels.lattice import lattice_entropy, lattice_quantile
+from service.core.distributions.kernels.lattice import lattice_entropy, lattice_quantile, long_lattice_entropy
 from service.core.distributions.kernels.logarithms import log_complement, smaller_tail
 from service.core.distributions.kernels.newton import newton_on_log_tail
 from service.core.distributions.kernels.quadrature import FINE, MEDIUM, Rule
@@ -206,3 +206,16 @@ def test_entropy_of_a_smooth_lattice_law_is_the_integral() -> None:
         else:
             exact = log(2 * pi * mp.e * rate) / 2 - 1 / (12 * mpf(rate)) - 1 / (24 * mpf(rate) ** 2)
         assert given == pytest.approx(float(exact), rel=1e-14, abs=0)
+
+
+def test_entropy_of_a_long_lattice_law() -> None:
+    """Poisson as in `lattice_entropy`; a geometric law on 0, 1, ... with mean 1e6, whose entropy has a closed form."""
+    rate = number(400.0)
+    moments = (rate, np.sqrt(rate))
+    near_normal = long_lattice_entropy(log_poisson_mass, rate, moments=moments, far=number(700.0))
+    assert near_normal == lattice_entropy(log_poisson_mass, rate, moments=moments, ends=(number(0.0), number(np.inf)))
+    p = number(1e-6)
+    long = long_lattice_entropy(
+        lambda k, p: np.log(p) + k * np.log1p(-p), p, moments=(1 / p, 1 / p), far=-60 / np.log1p(-p)
+    )
+    assert long == pytest.approx(float(-(p * np.log(p) + (1 - p) * np.log1p(-p)) / p), rel=1e-12, abs=0)

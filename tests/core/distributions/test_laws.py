@@ -17,7 +17,7 @@ EVERY_FAMILY = pytest.mark.parametrize("kind", FAMILIES.values(), ids=str)
 FEW = settings(max_examples=15, deadline=None, derandomize=True)
 PROBABILITIES = st.floats(1e-6, 1) | st.floats(0, 300).map(lambda power: 10.0**-power)
 INNER = PROBABILITIES.filter(lambda p: 0 < p < 1)
-LEVELS = np.concatenate([10.0 ** -np.arange(26.0, 0.9, -0.5), np.arange(0.15, 0.5, 0.05)])
+LEVELS = np.concatenate([10.0 ** -np.arange(26.0, 0.9, -0.125), np.arange(0.15, 0.5, 0.05)])
 EPS = np.finfo(np.float64).eps
 
 
@@ -29,10 +29,10 @@ def _quiet() -> Any:
 
 
 def support_points(asked: Family) -> Numbers:
-    """Quantiles that cut the law into pieces, and its mode, where a density may have a kink."""
+    """Quantiles that cut the law into pieces, and its mode, where a density may have a kink; no poles of it."""
     both = [asked.quantile(LEVELS, upper=False), asked.quantile(LEVELS[::-1], upper=True)]
     points = np.concatenate([*both, np.atleast_1d(asked.most_likely())])
-    return np.unique(points[np.isfinite(points)])
+    return np.unique(points[np.isfinite(points) & np.isfinite(asked.density(points))])
 
 
 def integrals(asked: Family, points: Numbers) -> tuple[Numbers, Numbers]:
@@ -79,13 +79,16 @@ def test_tails_are_monotone(kind: type[Family], data: st.DataObject) -> None:
 def test_the_quantile_inverts_both_tails(kind: type[Family], data: st.DataObject) -> None:
     asked, p, upper = data.draw(laws(kind)), data.draw(INNER), data.draw(st.booleans())
     x, reached = quantile(asked, number(p), upper)
-    if not np.isfinite(x):
-        return
+    if not 1e-300 < np.abs(x) < np.inf and not asked.discrete:
+        return  # beyond the doubles, at either end
     if not asked.discrete:
-        neighbour = 4 * EPS * float(np.abs(x) * asked.density(x))
-        scale = float(asked.moments().standard_deviation)
-        centre = 4 * EPS * float(asked.density(x)) * (scale if np.isfinite(scale) else 0)
-        assert reached == pytest.approx(p, rel=1e-11, abs=neighbour + centre)
+        # the tail passes p within a few of the doubles beside x, or of those at the size of the law's spread
+        spread = asked.moments().standard_deviation
+        beside = spread if asked.support().lower < 0 and np.isfinite(spread) else 0
+        step = 4 * EPS * max(abs(float(x)), float(beside))
+        less, more = (getattr(asked.tails(x + side * step), "above" if upper else "at_most") for side in (-1, 1))
+        assert min(less, more, reached) <= p * (1 + 1e-11)
+        assert max(less, more, reached) >= p * (1 - 1e-11)
         return
     before = asked.tails(np.nextafter(x, -np.inf))
     if upper:
@@ -113,7 +116,8 @@ def test_the_density_adds_up_to_the_tails(kind: type[Family], data: st.DataObjec
     tails = asked.tails(points)
     left = tails.at_most[1:] < 0.5
     exact = np.where(left, np.diff(tails.at_most), -np.diff(tails.above))
-    noise = 1e-13 * np.where(left, tails.at_most[1:], tails.above[:-1])
+    rounding = 4 * EPS * np.abs(points) * asked.density(points)
+    noise = 1e-13 * np.where(left, tails.at_most[1:], tails.above[:-1]) + rounding[1:] + rounding[:-1]
     assert (np.abs(pieces - exact) <= 1e-9 * exact + noise).all()
 
 
@@ -135,6 +139,9 @@ def test_moments_and_entropy_are_those_of_the_density(kind: type[Family], data: 
     mean, spread, skewness, excess = asked.moments()
     if not np.isfinite(spread) or spread == 0:
         return
+    outside = asked.tails(points[0]).at_most + asked.tails(points[-1]).above
+    if outside > 1e-20 and not asked.discrete:
+        return  # more lies between the last double and the end of the support than quadrature can miss
     places, weights = integrals(asked, points)
     scores = (places - mean) / spread
     reach = max(abs(float(scores[0])), abs(float(scores[-1])))
@@ -213,7 +220,7 @@ def laws_by_numbers(draw: st.DrawFn, kind: type[Family]) -> dict[str, Any]:
 def same(together: Numbers, alone: list[Numbers]) -> None:
     """Equal but for the last bits of differently ordered sums."""
     for one, other in zip(np.broadcast_to(together, (3,)), alone, strict=True):
-        assert one == pytest.approx(float(other), rel=2e-15, abs=2e-15, nan_ok=True)
+        assert one == pytest.approx(float(other), rel=1e-14, abs=2e-15, nan_ok=True)
 
 
 @pytest.mark.parametrize(

@@ -7,6 +7,7 @@ from scipy.special import ndtri_exp
 
 from service.core.arrays import Numbers, Truths, flat
 from service.core.distributions.kernels.logarithms import smaller_tail
+from service.core.distributions.kernels.quadrature import MEDIUM
 
 MOST_STEPS = 120
 TIE = 4e-15
@@ -108,3 +109,48 @@ def smallest_mode(turning_point: Numbers) -> Numbers:
     """
     mode: Numbers = np.maximum(np.ceil(turning_point * (1 - 4e-16)) - 1, 0)
     return mode
+
+
+FIRST = 512
+PANELS = 40
+
+
+def long_lattice_entropy(
+    log_mass: Callable[..., Numbers], *parameters: Numbers, moments: tuple[Numbers, Numbers], far: Numbers
+) -> Numbers:
+    """-sum of m log m over the whole numbers from 0, for a law that may have a long tail; `far` ends it.
+
+    Near the normal law (mean 13 standard deviations from 0) as in `lattice_entropy`. Else 512 masses one by one; the
+    rest is the integral from 511.5 with the first term of the midpoint rule's error (Euler & Maclaurin), on 40 panels
+    of equal ratio with 36 points each. Work: 2,000 masses. Error 1e-12 of max(1, entropy).
+    """
+    shape, (mean, spread, end, *rest) = flat(*moments, far, *parameters)
+    total = np.zeros(mean.size)
+    normal_like = (mean >= 13 * spread) & (spread >= SMOOTH_FROM)
+    i = np.flatnonzero(normal_like)
+    if i.size:
+        some = [v[i] for v in rest]
+        ends = (np.zeros(i.size), np.full(i.size, np.inf))
+        total[i] = lattice_entropy(log_mass, *some, moments=(mean[i], spread[i]), ends=ends)
+    chosen = np.flatnonzero(~normal_like)
+    for first in range(0, chosen.size, BLOCK // 8):
+        i = chosen[first : first + BLOCK // 8]
+        total[i] = _long_sum(log_mass, [v[i] for v in rest], end[i])
+    return total.reshape(shape)[()]
+
+
+def _long_sum(log_mass: Callable[..., Numbers], parameters: list[Numbers], end: Numbers) -> Numbers:
+    def share(k: Numbers) -> Numbers:
+        logs = log_mass(k, *parameters)
+        return np.where(np.isfinite(logs), -np.exp(logs) * logs, 0)
+
+    direct = share(np.arange(float(FIRST))[:, None]).sum(axis=0)
+    start = FIRST - 0.5
+    ratio = np.maximum(end / start, 1) ** (1 / PANELS)
+    edges = start * ratio ** np.arange(PANELS + 1)[:, None]
+    width = np.diff(edges, axis=0)
+    places = edges[:-1] + MEDIUM.over(width)
+    integral = (width * MEDIUM.mean(share(places.reshape(-1, end.size)).reshape(places.shape))).sum(axis=0)
+    bend = (share(start + np.full(end.shape, 0.5)) - share(start - np.full(end.shape, 0.5))) / 24
+    total: Numbers = direct + np.where(end > start, integral + bend, 0)
+    return total
