@@ -59,6 +59,6 @@ def partial_moments(distance: Numbers, spread: Numbers, z: Numbers) -> tuple[Num
     above = z > 0
     p, density = ndtr(z), normal_density(z)
     upper_1 = distance * p + spread * density
-    upper_2 = (distance * distance + spread * spread) * p + distance * spread * density
+    upper_2 = (distance * distance + spread * spread) * p + distance * (spread * density)
     lower_1, lower_2 = normal_gaps(np.minimum(z, 0.0))
     return np.where(above, upper_1, spread * lower_1), np.where(above, upper_2, spread * spread * lower_2)

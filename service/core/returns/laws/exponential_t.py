@@ -65,7 +65,7 @@ class ExponentialTLaw(HorizonLaw):
         z = score(distance, self.scale, LOG_COINCIDENCE)
         first, second = relative_t_gaps(self.degrees_of_freedom, distance, self.scale, z)
         growth = np.maximum(1 + threshold, 0.0)
-        return Gaps(growth * first, growth * growth * second)
+        return Gaps(growth * first, growth * (growth * second))
 
     def quantile(self, probability: Numbers) -> Numbers:
         return np.expm1(self.location + self.scale * t_at(self.degrees_of_freedom, probability))

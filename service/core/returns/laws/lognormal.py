@@ -34,14 +34,12 @@ class LognormalLaw(HorizonLaw):
         self.log_mean: Numbers
         self.log_deviation: Numbers
         self.log_mean, self.log_deviation = np.broadcast_arrays(log_mean, log_deviation)
-        self._mean, self._deviation = self._moments() if moments is None else moments
+        self._mean, self._deviation = moments or growth_moments(
+            self.log_mean + self.log_deviation**2 / 2, self.log_deviation**2
+        )
 
     def _distance(self, threshold: Numbers) -> Numbers:
         return log_growth_factor(threshold) - self.log_mean
-
-    def _moments(self) -> tuple[Numbers, Numbers]:
-        log_of_mean = self.log_mean + self.log_deviation**2 / 2
-        return np.expm1(log_of_mean), np.exp(log_of_mean) * np.sqrt(np.expm1(self.log_deviation**2))
 
     def mean(self) -> Numbers:
         return self._mean
@@ -64,7 +62,7 @@ class LognormalLaw(HorizonLaw):
         first, second = relative_gaps(
             distance, self.log_deviation, score(distance, self.log_deviation, LOG_COINCIDENCE)
         )
-        return Gaps(growth * first, growth * growth * second)
+        return Gaps(growth * first, growth * (growth * second))
 
     def quantile(self, probability: Numbers) -> Numbers:
         return np.expm1(self.log_mean + self.log_deviation * ndtri(probability))
@@ -90,6 +88,13 @@ class LognormalLaw(HorizonLaw):
     def ordering(self) -> Ordering:
         zero = np.zeros_like(self.log_mean)
         return Ordering("lognormal", zero, self.log_mean, self.log_deviation, self._mean + zero)
+
+
+def growth_moments(log_of_mean: Numbers, log_variance: Numbers) -> tuple[Numbers, Numbers]:
+    """E[G] - 1 and sd[G] of a lognormal G; either may overflow to infinity."""
+    # exp(v/2) sqrt(1 - exp(-v)) is sqrt(exp(v) - 1), in one exponential with the mean: their product may be moderate
+    deviation = np.exp(log_of_mean + log_variance / 2) * np.sqrt(-np.expm1(-log_variance))
+    return np.expm1(log_of_mean), np.where(log_variance > 0, deviation, 0.0)
 
 
 def relative_gaps(distance: Numbers, deviation: Numbers, z: Numbers) -> tuple[Numbers, Numbers]:

@@ -7,7 +7,7 @@ from service.core.distributions.family import Moments
 from service.core.parameters import Parameter
 from service.core.returns.law import HorizonLaw
 from service.core.returns.laws.exponential_t import predictive_log_growth
-from service.core.returns.laws.lognormal import LognormalLaw
+from service.core.returns.laws.lognormal import LognormalLaw, growth_moments
 from service.core.returns.model import LARGEST, ReturnModel
 
 
@@ -45,8 +45,7 @@ class Lognormal(ReturnModel):
         log_mean, variance = self._log_parameters()
         moments = self.expected_return, self.volatility
         if periods != 1:
-            mean = np.expm1(periods * np.log1p(self.expected_return))
-            moments = mean, (1 + mean) * np.sqrt(np.expm1(periods * variance))
+            moments = growth_moments(periods * np.log1p(self.expected_return), periods * variance)
         return LognormalLaw(periods * log_mean, np.sqrt(periods * variance), moments)
 
     def predictive_law(self, periods: Numbers, compounding: str, sample_size: Numbers) -> HorizonLaw:  # noqa: ARG002
