@@ -81,6 +81,7 @@ CAUTIONS = {
 }
 
 NULL_REASONS = {
+    "needs_shade": "The figure needs shade: the event to shade.",
     "no_rank": "The portfolio is not admissible, or the criterion has no value for it.",
     "needs_sample_size": "The figure needs sample_size: the periods behind the estimates.",
     "not_computed": "The figure is not computed for so many portfolios, or not asked for.",

@@ -16,7 +16,6 @@ BROKEN_PERCENT = re.compile(rb"%(?![0-9A-Fa-f]{2})")
 NUMBER = re.compile(r"-?(0|[1-9][0-9]*)(\.[0-9]+)?([eE][+-]?[0-9]+)?")
 OF_QUERY = "?"
 """Marks faults of the query itself: a parameter may have the name of a field of the body."""
-ONLY_IN_POST = ("questions", "components")
 
 
 class FlatQuery:
@@ -34,6 +33,8 @@ class FlatQuery:
     def ask(self, raw: bytes) -> Asked:
         """Read a query's bytes as sent. Raises Unreadable or ValidationError."""
         body, faults = self._body(raw)
+        optional = [name for name, field in self.question.fields.items() if not field.required]
+        body = {name: value for name, value in body.items() if value != {} or name not in optional}
         try:
             asked = self.question.ask(body)
         except ValidationError as error:
@@ -52,7 +53,7 @@ class FlatQuery:
             name, value = _pair(part)
             if name in seen:
                 faults[OF_QUERY + name] = [Fault("given_twice", f"{shown(name)} stands twice; a list has commas.")]
-            elif name in ONLY_IN_POST:
+            elif name == "components" or (name == "questions" and self.question.batch):
                 faults[OF_QUERY + name] = [Fault("only_in_post", f"{name} can be sent by POST alone.")]
             elif name not in self.homes:
                 faults[OF_QUERY + name] = [unknown(name, self.homes)]

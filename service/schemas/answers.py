@@ -49,6 +49,7 @@ class AnswerShape:
     name: str
     members: Mapping[str, Shape]
     forms: tuple[str, ...] = ("number", "list")
+    """Values of `form`; "" for an answer that has none."""
 
     def components(self) -> dict[str, dict[str, Any]]:
         """Print one component for each form."""
@@ -56,7 +57,7 @@ class AnswerShape:
 
     def _print(self, form: str) -> dict[str, Any]:
         many = form in MANY_FORMS
-        head: dict[str, Shape] = {"form": Fixed(constant(form))}
+        head: dict[str, Shape] = {"form": Fixed(constant(form))} if form else {}
         if many:
             head["length"] = Fixed(COUNT)
         tail = {name: Fixed(schema) for name, schema in TAIL.items()}
@@ -75,6 +76,13 @@ class Single:
     """One number, also where other figures are arrays."""
 
     value: float
+
+
+@dataclass(frozen=True, slots=True)
+class Listed:
+    """A list of numbers that belongs to one answer, such as the points of a curve."""
+
+    values: Any
 
 
 @dataclass(frozen=True, slots=True)
@@ -103,6 +111,8 @@ class Writer:
             return value.value
         if kind is Single:
             return self._number(value.value, pointer)
+        if kind is Listed:
+            return self._array(value.values, pointer, value.values.size)
         if kind is Ranks:
             return self._ranks(value.values, pointer)
         if kind is str or kind is bool or kind is int:

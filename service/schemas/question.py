@@ -46,6 +46,8 @@ class Question(Schema):
     """Fields of which exactly one is given; it tells which way of asking is meant. Empty: there is one way."""
     belongs_to: ClassVar[Mapping[str, str]] = {}
     """Other fields that go together with one way of asking alone."""
+    arrays: ClassVar[bool] = True
+    """Whether numbers may be arrays, each entry a question of its own."""
     error_messages: ClassVar[dict[str, str]] = {"unknown": STRANGER}  # type: ignore[misc]  # as in marshmallow
 
     def __init__(self, limits: Limits, batch: bool) -> None:
@@ -77,6 +79,8 @@ class Question(Schema):
         loaded = {name: value for name, value in self.load(data).items() if value is not None}
         if self.told_by:
             self._check_way(loaded)
+        if not self.arrays:
+            refuse_arrays(loaded)
         length = common_length(loaded)
         return Asked(self._make(loaded), {n: v.numbers if type(v) is Given else v for n, v in loaded.items()}, length)
 
@@ -143,6 +147,18 @@ def common_length(loaded: Mapping[str, Any]) -> int | None:
     if faults:
         raise ValidationError(faults)
     return first
+
+
+def refuse_arrays(loaded: Mapping[str, Any]) -> None:
+    """Refuse every array of a question that is about one law. Raises ValidationError."""
+    faults: dict[str, Any] = {}
+    for path, _ in arrays_of(loaded):
+        place = faults
+        for step in path[:-1]:
+            place = place.setdefault(step, {})
+        place[path[-1]] = [Fault("no_arrays", "One number is needed here, not a list.")]
+    if faults:
+        raise ValidationError(faults)
 
 
 def arrays_of(loaded: Mapping[str, Any]) -> Iterator[tuple[tuple[str, ...], Any]]:

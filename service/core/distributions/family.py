@@ -117,6 +117,13 @@ class Family(Declared):
         """Least and greatest possible value."""
         raise NotImplementedError
 
+    def values(self, low: Numbers, high: Numbers, most: int) -> Numbers:
+        """Give the possible values of a discrete law in [low, high]; of more than `most`, so many evenly spread."""
+        first, last = np.ceil(low), np.floor(high)
+        if last - first < most:
+            return np.arange(float(first), float(last) + 1)
+        return np.unique(np.rint(np.linspace(first, last, most)))
+
 
 def _log_by_other(probability: Numbers, other: Numbers) -> Numbers:
     """Logarithm of a tail; of one above 1/2 through the other one, which keeps the digits of a value near 0."""

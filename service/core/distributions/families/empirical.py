@@ -76,3 +76,8 @@ class Empirical(Family):
 
     def support(self) -> Support:
         return Support(self._sorted[0], self._sorted[-1])
+
+    def values(self, low: Numbers, high: Numbers, most: int) -> Numbers:
+        seen = self._distinct[0]
+        inside = seen[(seen >= low) & (seen <= high)]
+        return inside if inside.size <= most else inside[np.rint(np.linspace(0, inside.size - 1, most)).astype(np.intp)]
