@@ -106,7 +106,7 @@ def figures(
     # below ten numerical errors the quotient would be noise
     resolved = np.asarray((probability > 0) & (certain | (probability >= RESOLVED * law.numerical_error)))
     mean_gap = np.where(resolved, gap / probability, NO_VALUE)
-    quantile = law.upper_quantile(number(quantile_probability))
+    quantile, tail_losses = _quantiles(law, quantile_probability, confidence_levels, shape)
     growth = law.log_growth()
 
     def fit(figure: Numbers) -> Numbers:
@@ -129,7 +129,7 @@ def figures(
         threshold_at_probability=ThresholdAtProbability(
             quantile_probability, fit(quantile), fit(per_year(quantile, floor.horizon_years))
         ),
-        tail_losses=tuple(_tail_loss(law, level, shape) for level in confidence_levels),
+        tail_losses=tail_losses,
         total_loss_probability=fit(law.total_loss_probability()),
         actual_moments=Moments(*(fit(moment) for moment in moments)),
         outcomes=None if outcomes_count is None else _outcomes(law, outcomes_count, shape),
@@ -164,14 +164,25 @@ def _log_threshold(threshold: Numbers) -> Numbers:
     return np.where(threshold >= -1, log_growth_factor(threshold), NO_VALUE)
 
 
-def _tail_loss(law: HorizonLaw, confidence_level: float, shape: tuple[int, ...]) -> TailLoss:
-    tail = 1 - number(confidence_level)
-    loss, mean_loss = -law.upper_quantile(tail), law.expected_shortfall(tail)
-    return TailLoss(confidence_level, np.broadcast_to(loss, shape)[()], np.broadcast_to(mean_loss, shape)[()])
+def _quantiles(
+    law: HorizonLaw, probability: float, confidence_levels: Sequence[float], shape: tuple[int, ...]
+) -> tuple[Numbers, tuple[TailLoss, ...]]:
+    """Give the quantile at the probability, and the losses at each level; all levels at once."""
+    levels = _along_new_axis(np.array([1 - probability, *confidence_levels]), shape)
+    tails = 1 - levels
+    tails[0] = probability  # not by way of 1 - (1 - p)
+    quantiles = np.broadcast_to(law.upper_quantile(tails), (len(tails), *shape))
+    mean_losses = np.broadcast_to(law.expected_shortfall(tails[1:]), (len(tails) - 1, *shape))
+    losses = zip(confidence_levels, -quantiles[1:], mean_losses, strict=True)
+    return quantiles[0], tuple(TailLoss(level, loss[()], mean[()]) for level, loss, mean in losses)
+
+
+def _along_new_axis(values: Numbers, shape: tuple[int, ...]) -> Numbers:
+    """Put values along a new first axis before `shape`."""
+    return values.reshape((-1,) + (1,) * len(shape))
 
 
 def _outcomes(law: HorizonLaw, count: int, shape: tuple[int, ...]) -> Numbers:
     """Lower quantiles at (k - 1/2)/count for k = 1 ... count."""
-    middles = (np.arange(count) + 0.5) / count
-    probabilities = middles.reshape((count,) + (1,) * len(shape))
+    probabilities = _along_new_axis((np.arange(count) + 0.5) / count, shape)
     return np.broadcast_to(law.quantile(probabilities), (count, *shape))
