@@ -13,7 +13,8 @@ from typing import Any
 import orjson
 
 DEEPEST = 32
-LONG_DIGITS = re.compile(rb"[0-9]{20}")
+ALL_DIGITS_NOUGHT = bytes(ord("0") if chr(code).isdecimal() and code < 128 else code for code in range(256))
+LONG_DIGITS = b"0" * 20
 LONG_INTEGER = re.compile(rb'"(?:[^"\\]|\\.)*"|(?<![0-9.eE+-])-?[0-9]{20,}(?![0-9.eE])')
 
 
@@ -31,26 +32,31 @@ def read(body: bytes) -> Any:
     """Read a body. Raises Unreadable."""
     if not body or body.isspace():
         raise Unreadable("no_body", "The body is empty; a JSON object is needed.")
-    if body.count(b"[") + body.count(b"{") > DEEPEST:
-        _check_depth(body)
     try:
         value = orjson.loads(body)
     except orjson.JSONDecodeError as error:
         raise _explain(body, error) from None
     if type(value) is dict or type(value) is list:
-        if body.count(b":") != _count_keys(value):
+        if body.count(b":") != _count_keys(value, 1):
             json.loads(body, object_pairs_hook=_refuse_duplicates)
-        if LONG_DIGITS.search(body):
+        if LONG_DIGITS in body.translate(ALL_DIGITS_NOUGHT):
             _refuse_long_integers(body)
     return value
 
 
-def _count_keys(value: Any) -> int:
+def _count_keys(value: Any, depth: int) -> int:
+    """Count the keys of every object, refusing deep nesting on the way."""
+    if depth > DEEPEST:
+        raise _too_deep()
     if type(value) is dict:
-        return len(value) + sum(_count_keys(v) for v in value.values() if type(v) is dict or type(v) is list)
+        return len(value) + sum(_count_keys(v, depth + 1) for v in value.values() if type(v) is dict or type(v) is list)
     if value and (type(value[0]) is dict or type(value[0]) is list):  # a list of numbers is not walked
-        return sum(_count_keys(v) for v in value if type(v) is dict or type(v) is list)
+        return sum(_count_keys(v, depth + 1) for v in value if type(v) is dict or type(v) is list)
     return 0
+
+
+def _too_deep() -> Unreadable:
+    return Unreadable("too_deep", f"Objects and lists are nested deeper than {DEEPEST}.", {"limit": DEEPEST})
 
 
 def _refuse_duplicates(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
@@ -60,16 +66,6 @@ def _refuse_duplicates(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
         twice = next(name for position, name in enumerate(names) if name in names[:position])
         raise Unreadable("duplicate_key", f"The key {twice[:60]!r} stands twice in one object.", {"key": twice[:200]})
     return kept
-
-
-def _check_depth(body: bytes) -> None:
-    """Refuse deep nesting before any reader recurses: brackets are counted outside strings."""
-    depth = 0
-    for token in re.finditer(rb'"(?:[^"\\]|\\.)*"|[\[\]{}]', body):
-        first = token.group()[:1]
-        depth += (first in b"[{") - (first in b"]}")
-        if depth > DEEPEST:
-            raise Unreadable("too_deep", f"Objects and lists are nested deeper than {DEEPEST}.", {"limit": DEEPEST})
 
 
 def _refuse_long_integers(body: bytes) -> None:
@@ -92,6 +88,8 @@ def _explain(body: bytes, error: orjson.JSONDecodeError) -> Unreadable:
     where = f"at line {error.lineno}, column {error.colno}"
     if "surrogate" in error.msg:
         return Unreadable("not_utf8", f"An escape stands for half a character {where}.", place)
+    if re.search("depth limit|recursion", error.msg, re.IGNORECASE):  # orjson's own limit lies beyond ours
+        return _too_deep()
     if "infinity" in error.msg:
         return Unreadable("number_out_of_range", f"A number is too large for a double {where}.", place)
     return Unreadable("not_json", f"The body is not JSON {where}.", place)

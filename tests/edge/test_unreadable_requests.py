@@ -53,6 +53,7 @@ def codes(answer: RawAnswer) -> list[str]:
         pytest.param(law(b'"\\ud800"'), "not_utf8", id="lone surrogate"),
         pytest.param(law(b'"\xff"'), "not_utf8", id="not UTF-8"),
         pytest.param("{}".encode("utf-16"), "not_utf8", id="UTF-16"),
+        pytest.param(b"[" * 40 + b"]" * 40, "too_deep", id="lists a little too deep"),
         pytest.param(b"[" * 30_000 + b"]" * 30_000, "too_deep", id="nested lists"),
         pytest.param(b'{"a":' * 10_000 + b"1" + b"}" * 10_000, "too_deep", id="nested objects"),
         pytest.param(b"[" * 60_000, "too_deep", id="nesting never closed"),
