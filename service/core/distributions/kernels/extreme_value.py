@@ -11,6 +11,7 @@ EULER_GAMMA = 0.57721566490153286061
 APERY = 1.2020569031595942854
 SERIES_BELOW = 0.22
 TERMS = 340
+BLOCK = 4096
 
 
 def extreme_moments(c: Numbers) -> Moments:
@@ -49,24 +50,30 @@ def extreme_moments(c: Numbers) -> Moments:
     )
 
 
+def _coefficients() -> Numbers:
+    """Rows: log g_1 (less its first term), log(g_k/g_1^k) for k = 2, 3, 4, and their combinations without low powers.
+
+    zeta(n)/n times 1, 2^n - 2, 3^n - 3, 4^n - 4, 3^n - 3 2^n + 3, 4^n - 4 3^n + 6 2^n - 4; n = 2, 3, ...; in whole
+    numbers, which do not cancel.
+    """
+    rows = [
+        (1, 2**n - 2, 3**n - 3, 4**n - 4, 3**n - 3 * 2**n + 3, 4**n - 4 * 3**n + 6 * 2**n - 4) for n in range(2, TERMS)
+    ]
+    powers = np.arange(2.0, TERMS)
+    table: Numbers = np.array(rows, dtype=np.float64).T * (zeta(powers) / powers)
+    return table
+
+
+COEFFICIENTS = _coefficients()
+
+
 def _by_series(c: Numbers) -> Numbers:
     """Log g_1, log(g_k/g_1^k) for k = 2, 3, 4, and those of k = 3, 4 less 3 and (4, -6) times the lower ones."""
-    n = np.arange(2.0, TERMS)[:, None]
-    terms = zeta(n) / n * c**n
-    # c^n 4^n stays below 1 for |c| < 1/4: the two are multiplied in logarithm's stead as (4 c)^n
-    powers = [terms] + [zeta(n) / n * (k * c) ** n for k in (2, 3, 4)]
-    one, two, three, four = powers
-    from_third, from_fourth = slice(1, None), slice(2, None)
-    return np.array(
-        [
-            EULER_GAMMA * c + one.sum(axis=0),
-            (two - 2 * one).sum(axis=0),
-            (three - 3 * one).sum(axis=0),
-            (four - 4 * one).sum(axis=0),
-            (three - 3 * two + 3 * one)[from_third].sum(axis=0),
-            (four - 4 * three + 6 * two - 4 * one)[from_fourth].sum(axis=0),
-        ]
-    )
+    powers = np.arange(2.0, TERMS)[:, None]
+    blocks = [COEFFICIENTS @ c[i : i + BLOCK] ** powers for i in range(0, c.size, BLOCK)]
+    logs: Numbers = np.concatenate(blocks, axis=1)
+    logs[0] += EULER_GAMMA * c
+    return logs
 
 
 def _by_gammaln(c: Numbers) -> Numbers:

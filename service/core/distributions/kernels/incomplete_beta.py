@@ -90,10 +90,23 @@ def _log_lower_tail(a: Numbers, b: Numbers, x: Numbers, y: Numbers, offset: Numb
 
 def _log_by_scipy(a: Numbers, b: Numbers, x: Numbers, y: Numbers) -> Numbers:
     """Logarithm of I_x(a, b); from the other tail where a skew law has more than 1/2 below its mean."""
+    tail = _by_smaller_argument(betainc, betaincc, a, b, x, y)
+    value = np.log(tail)
+    i = np.flatnonzero(tail > 0.5)
+    if i.size:
+        value[i] = np.log1p(-_by_smaller_argument(betaincc, betainc, a[i], b[i], x[i], y[i]))
+    return value
+
+
+def _by_smaller_argument(
+    function: np.ufunc, mirrored: np.ufunc, a: Numbers, b: Numbers, x: Numbers, y: Numbers
+) -> Numbers:
+    """function(a, b, x) = mirrored(b, a, y), whichever argument is smaller: it is the one known exactly."""
+    value = np.empty_like(x)
     near = x <= 0.5
-    tail = np.where(near, betainc(a, b, x), betaincc(b, a, y))
-    rest = np.where(near, betaincc(a, b, x), betainc(b, a, y))
-    return np.where(tail > 0.5, np.log1p(-rest), np.log(tail))
+    value[near] = function(a[near], b[near], x[near])
+    value[~near] = mirrored(b[~near], a[~near], y[~near])
+    return value
 
 
 def _log_quadrature(shapes: tuple[Numbers, Numbers], x: Numbers, y: Numbers, offset: Numbers, rule: Rule) -> Numbers:
