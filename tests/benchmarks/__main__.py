@@ -1,4 +1,4 @@
-"""One question over HTTP against a bare Flask echo under the same gunicorn settings, in one run.
+"""What the service costs beside its limits and beside what a first draft costs, in one run on one machine.
 
     python -m tests.benchmarks
 
@@ -8,6 +8,7 @@ Prints a table. Ratios are medians of paired rounds; absolute figures are for or
 import statistics
 import sys
 
+from tests.benchmarks.arrays import measure as measure_arrays
 from tests.benchmarks.http_peers import Peer, echo_peer, service_peer
 from tests.benchmarks.load import Round, run_round
 
@@ -30,7 +31,7 @@ def measure(service: Peer, echo: Peer) -> tuple[list[Round], list[Round]]:
 
 
 def main() -> int:
-    """Print the table; status 1 where the ratio by rate is missed."""
+    """Print the tables; status 1 where a promise is missed."""
     with service_peer() as service, echo_peer() as echo:
         ours, theirs = measure(service, echo)
     by_rate = statistics.median(a.rate / b.rate for a, b in zip(ours, theirs, strict=True))
@@ -48,7 +49,7 @@ def main() -> int:
         f"of the echo: {by_rate:.3f} by rate (at least {LEAST_RATIO}), {by_cpu:.3f} by the worker's CPU time, "
         f"p99 {tails:.2f} times; {ROUNDS} paired rounds of {REQUESTS} requests on {CONNECTIONS} connections"
     )
-    return 0 if by_rate >= LEAST_RATIO else 1
+    return 0 if measure_arrays() and by_rate >= LEAST_RATIO else 1
 
 
 if __name__ == "__main__":
