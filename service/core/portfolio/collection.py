@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from service.core.distributions.family import Moments
-from service.core.errors import DoesNotFit
+from service.core.errors import DoesNotFit, Refusal
 from service.core.returns import Returns, law_of_horizon
 from service.core.returns.horizon import placed
 from service.core.returns.laws.collected import CollectedLaw, Positions, side_by_side, stacked
@@ -46,23 +46,31 @@ class Collection:
 
 def collected(portfolios: Portfolios, horizon_years: float, parameter_uncertainty: str) -> Collection:
     """Group the portfolios and give their laws as one. Raises DoesNotFit; paths lead from the question."""
-    if isinstance(portfolios.returns, Returns):
-        groups = [(portfolios.returns, np.arange(portfolios.count))]
-        places: list[tuple[str | int, ...]] = [("portfolio_columns",)]
-    else:
-        groups = _grouped(portfolios.returns)
-        places = [("portfolios", int(positions[0]), "returns") for _, positions in groups]
+    asked = portfolios.returns
+    columns = isinstance(asked, Returns)
+    groups = [(asked, np.arange(portfolios.count))] if isinstance(asked, Returns) else _grouped(asked)
     parts, refusals = [], []
-    for (returns, positions), place in zip(groups, places, strict=True):
+    for returns, positions in groups:
         try:
             parts.append((law_of_horizon(returns, horizon_years, parameter_uncertainty), positions))
         except DoesNotFit as unfit:
-            refusals += [placed(refusal, place) for refusal in unfit.refusals]
+            refusals += [
+                placed(refusal, ("portfolio_columns",)) if columns else _placed_in_rows(refusal, positions)
+                for refusal in unfit.refusals
+            ]
     if refusals:
         raise DoesNotFit(refusals)
     moments = [stacked(returns.model.moments()) for returns, _ in groups]
     joined = side_by_side(moments, [positions for _, positions in groups], portfolios.count)
     return Collection(CollectedLaw(parts, portfolios.count), Moments(*joined), tuple(groups))
+
+
+def _placed_in_rows(refusal: Refusal, positions: Positions) -> Refusal:
+    """Lead a refusal about a group to the row it is about: an entry of a stacked array is a row."""
+    *path, last = refusal.path
+    if isinstance(last, int):
+        return placed(replace(refusal, path=tuple(path)), ("portfolios", int(positions[last]), "returns"))
+    return placed(refusal, ("portfolios", int(positions[0]), "returns"))
 
 
 def _grouped(rows: Sequence[Returns]) -> list[tuple[Returns, Positions]]:

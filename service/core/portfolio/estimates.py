@@ -3,7 +3,7 @@
 import numpy as np
 from scipy.special import ndtri
 
-from service.core.arrays import Numbers, number
+from service.core.arrays import Numbers, Truths, number
 from service.core.errors import DoesNotFit, Refusal
 from service.core.portfolio.collection import Collection
 from service.core.portfolio.confidence import (
@@ -13,7 +13,7 @@ from service.core.portfolio.confidence import (
     quantile_covariance,
     ratio_covariance,
 )
-from service.core.portfolio.floor import Floor
+from service.core.portfolio.floor import Floor, per_year
 from service.core.portfolio.question import RankingQuestion
 from service.core.returns import Returns
 
@@ -25,11 +25,12 @@ ROUNDING = 1e-9
 LEAST_EIGENVALUE = -1e-8
 
 
-def estimates_of(collection: Collection, question: RankingQuestion) -> Estimates | str:
+def estimates_of(collection: Collection, question: RankingQuestion, compared: Truths) -> Estimates | str:
     """Give the estimates behind the criterion, per period, or the reason why there are none.
 
-    Available for normal returns of one period, compounding and sample size: ratio and shortfall probability by
-    (mean - threshold)/deviation, quantile_return, and expected_return with simple compounding.
+    `compared`: which portfolios the leader is compared with. Available for normal returns of one period, compounding
+    and sample size: ratio and shortfall probability by (mean - threshold)/deviation, quantile_return, and
+    expected_return with simple compounding.
     """
     groups = [returns for returns, _ in collection.groups]
     sizes = [returns.sample_size for returns in groups]
@@ -44,7 +45,7 @@ def estimates_of(collection: Collection, question: RankingQuestion) -> Estimates
     if figures is None:
         return NOT_COMPUTED
     values, arguments, covariance = figures
-    if not (np.isfinite(values).all() and np.isfinite(arguments).all()):
+    if not np.isfinite((values + arguments)[compared]).all():
         return NO_VALUE_REASON
     return Estimates(values, arguments, covariance, distinct_sizes[0], question.correlations)
 
@@ -67,10 +68,10 @@ def _figures(
 
 
 def _threshold_per_period(floor: Floor, periods: Numbers, compounding: str) -> Numbers:
-    """On the scale of the modelled return: simple for one period, or logarithmic."""
+    """On the scale of the modelled return: simple or logarithmic."""
     threshold = floor.over_horizon()
     if compounding == "simple":
-        return threshold
+        return per_year(threshold, float(periods))
     return np.log1p(threshold) / periods
 
 

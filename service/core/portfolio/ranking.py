@@ -107,7 +107,7 @@ def _confidence(collection: Collection, question: RankingQuestion, order: Positi
     """Compare the leader with every other admissible portfolio, in the order of the ranking."""
     if not admissible.any():
         return _InLeader(None, None, "none_admissible", ())
-    estimates = estimates_of(collection, question)
+    estimates = estimates_of(collection, question, admissible)
     if isinstance(estimates, str):
         return _InLeader(None, None, estimates, ())
     leader, others = int(order[0]), order[1:][admissible[order[1:]]]

@@ -196,6 +196,20 @@ def test_log_returns_compare_with_the_floor_as_a_log_return_per_period() -> None
     assert found == pytest.approx(confidence_in_leader(asked, leader, others), rel=1e-9)
 
 
+def test_an_inadmissible_portfolio_without_a_figure_does_not_matter() -> None:
+    found = ranking([*rows(2), normal(0.0, 0.0, sample_size=60)], floor=floor(THRESHOLD), limit=0.9)
+    assert found.admissible.tolist() == [True, True, False]
+    assert found.confidence_in_leader is not None
+
+
+def test_many_independent_portfolios() -> None:
+    """Copies of one figure, each known alike: every one of them leads with the same chance."""
+    count = 1_200
+    alike = Estimates(np.zeros(count), np.full(count, 0.1), mean_covariance, SAMPLE_SIZE, None)
+    joint = confidence_in_leader(alike, 0, np.arange(1, count))
+    assert joint.probability == pytest.approx(1 / count, rel=1e-12)
+
+
 def test_only_the_admissible_are_compared() -> None:
     found = ranking(rows(), criterion="expected_return", limit=0.36, floor=floor(THRESHOLD))
     assert found.admissible.tolist() == [True, False, False] or found.pairwise_confidence is not None

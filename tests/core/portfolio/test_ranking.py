@@ -193,6 +193,10 @@ def test_refusals_lead_to_the_first_portfolio_of_their_kind() -> None:
         (("portfolios", 1, "returns", "sample_size"), "must_be_at_least"),
         (("portfolios", 2, "returns", "sample_size"), "must_be_at_least"),
     ]
+    alike = [normal(0.06, 0.1, sample_size=n) for n in (30, 4, 3)]
+    with pytest.raises(DoesNotFit) as raised:
+        ranking([rows[0], *alike], parameter_uncertainty="predictive")
+    assert raised.value.refusals[1].path == ("portfolios", 3, "returns", "sample_size")
     with pytest.raises(DoesNotFit) as raised:
         ranking(returns("normal", expected_return=[0.1], volatility=[0.1]), parameter_uncertainty="predictive")
     assert raised.value.refusals[0].path == ("portfolio_columns", "sample_size")
