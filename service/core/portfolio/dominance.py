@@ -30,15 +30,15 @@ def dominated(law: CollectedLaw, order: Positions) -> tuple[Dominated, ...]:
 
     First order: F_A <= F_B everywhere and < somewhere. Second: the same of their integrals, both means finite. Exact
     within a kind of law by its parameters (Levy 1973) and between laws of atoms by cumulative sums; else numerical: on
-    121 probabilities from 1e-6 to 1 - 1e-6. Work: the number of portfolios, for each that none
-    before it dominates.
+    121 probabilities from 1e-6 to 1 - 1e-6. Work: the number of portfolios for each of them;
+    within a kind, for those that nobody dominates.
     """
     comparison = Comparison(law)
     open_ = np.full(law.count, True)
     found: list[Dominated] = []
     for a in order:
-        if not open_[a]:  # what it dominates, its own dominator dominates too
-            continue
+        if comparison.grid is None and not open_[a]:
+            continue  # within a kind, what it dominates its own dominator dominates too
         others = np.flatnonzero(open_ & (np.arange(law.count) != a))
         orders, exact = comparison.orders(int(a), others)
         for b, degree, is_exact in zip(others, orders, exact, strict=True):

@@ -81,6 +81,14 @@ def test_a_law_without_a_mean_is_dominated_at_the_first_order_alone() -> None:
     assert found == ()
 
 
+def test_a_law_without_a_mean_does_not_take_over_what_the_one_it_dominates_dominates() -> None:
+    """It is ahead of the certain return, which is ahead of the uncertain one at second order; it itself is not."""
+    certain, uncertain = normal(0.0, 0.0), student(0.0, 0.001, 2.1)
+    without_mean = student(0.02, 0.001, 5, compounding="continuous")
+    found = ranking([certain, uncertain, without_mean], criterion="expected_gap").dominated
+    assert found == (Dominated(0, 2, 1, "numerical"), Dominated(1, 0, 2, "numerical"))
+
+
 def plain_dominance(better: list[float], worse: list[float]) -> int:
     """By the definition, in rationals, at every observation."""
     a, b = ([Fraction(v).limit_denominator(1000) for v in values] for values in (better, worse))
