@@ -1,0 +1,110 @@
+"""The truncated normal distribution."""
+
+import numpy as np
+from scipy.special import log_ndtr, ndtri_exp
+
+from service.core.arrays import Numbers, flat
+from service.core.distributions.family import Family, Moments, Support, Tails
+from service.core.distributions.kernels.cut_moments import cut_moments
+from service.core.distributions.kernels.elementary import HALF_LOG_2PI
+from service.core.distributions.kernels.logarithms import smaller_tail
+from service.core.distributions.kernels.newton import newton_on_log_tail
+from service.core.distributions.kernels.normal_interval import Cut, log_cut_density, log_lower_share, log_scaled_mass
+from service.core.parameters import Order, anywhere, positive
+
+
+def _distance(cut: Cut, tail: Numbers) -> Numbers:
+    """Distance from the lower end within which the cut law has the mass `tail`: Newton on its log, in log distance."""
+    log_mass = log_scaled_mass(cut.a, cut.d) - np.square(cut.peak) / 2
+    # far from the lower end by the normal quantile, close to it by the density there
+    reached = np.logaddexp(log_ndtr(cut.a), np.log(tail) + log_mass)
+    along = np.where(cut.a < 0, ndtri_exp(np.minimum(reached, 0)) - cut.a, 0)
+    at_end = (cut.a - cut.peak) * (cut.a + cut.peak) / 2
+    close = np.exp(np.minimum(np.log(tail) + log_scaled_mass(cut.a, cut.d) + at_end + HALF_LOG_2PI, 700))
+    start = np.where(along > 1e-3, along, close)
+    start = np.clip(np.where(np.isfinite(start), start, cut.d / 2), 1e-320, cut.d)
+
+    def log_density(v: Numbers, a: Numbers, d: Numbers) -> Numbers:
+        within = Cut(a, d, a + d)
+        offset = np.where(a > 0, np.exp(v), np.where(within.b < 0, np.exp(v) - d, a + np.exp(v)))
+        return v + log_cut_density(offset, within)
+
+    v = newton_on_log_tail(
+        lambda v, a, d: log_lower_share(np.exp(v), Cut(a, d, a + d)),
+        log_density,
+        np.log(tail),
+        np.log(start),
+        cut.a,
+        cut.d,
+        rising=True,
+        low=-800.0,
+        high=np.log(cut.d) + 1e-12,
+    )
+    return np.minimum(np.exp(v), cut.d)
+
+
+class TruncatedNormal(Family):
+    """A normal law of which only the part between two ends is possible; mean and spread are those of the whole law.
+
+    Masses between two points scaled to the peak (see `log_scaled_mass`), so that ends far out in a tail do no harm;
+    the quantile by Newton's method in the distance from the nearer end. Against mpmath: 1e-14 relative.
+    """
+
+    name = "truncated_normal"
+    support_words = "lower <= x <= upper"
+    method = "quadrature"
+    quantile_method = "newton_on_log_tail"
+    numerical_error = 1e-13
+    mean = anywhere("the mean of the whole normal law", example=0.05)
+    standard_deviation = positive("the standard deviation of the whole normal law", example=0.2)
+    lower = anywhere("the lower end", example=-0.3)
+    upper = anywhere("the upper end", example=0.5)
+    rules = (Order("lower", "upper"),)
+
+    @property
+    def _cut(self) -> Cut:
+        a, b = ((end - self.mean) / self.standard_deviation for end in (self.lower, self.upper))
+        return Cut(a, (self.upper - self.lower) / self.standard_deviation, b)
+
+    @property
+    def _mirrored(self) -> Cut:
+        a, d, b = self._cut
+        return Cut(-b, d, -a)
+
+    def log_tails(self, x: Numbers) -> Tails:
+        inside = np.clip(x, self.lower, self.upper)
+        below, above = ((side / self.standard_deviation) for side in (inside - self.lower, self.upper - inside))
+        return Tails(log_lower_share(below, self._cut), log_lower_share(above, self._mirrored))
+
+    def log_density(self, x: Numbers) -> Numbers:
+        cut = self._cut
+        origin = np.where(cut.a > 0, self.lower, np.where(cut.b < 0, self.upper, self.mean))
+        value = log_cut_density((x - origin) / self.standard_deviation, cut) - np.log(self.standard_deviation)
+        return np.where((x >= self.lower) & (x <= self.upper), value, -np.inf)[()]
+
+    def quantile(self, probability: Numbers, upper: bool) -> Numbers:
+        tail, lower = smaller_tail(probability, upper)
+        shape, (p, is_lower, a, d, b) = flat(tail, lower, *self._cut)
+        from_below = is_lower > 0
+        start = np.where(from_below, a, -b)
+        distance = _distance(Cut(start, d, start + d), p).reshape(shape)[()] * self.standard_deviation
+        value = np.where(from_below.reshape(shape), self.lower + distance, self.upper - distance)
+        return np.clip(value, self.lower, self.upper)
+
+    def moments(self) -> Moments:
+        mean, spread, skewness, excess = cut_moments(self._cut)
+        return Moments(
+            self.most_likely() + self.standard_deviation * mean, self.standard_deviation * spread, skewness, excess
+        )
+
+    def most_likely(self) -> Numbers:
+        return np.clip(self.mean, self.lower, self.upper)
+
+    def entropy(self) -> Numbers:
+        cut = self._cut
+        mean, spread, _, _ = cut_moments(cut)
+        square = spread * spread + mean * mean + 2 * cut.peak * mean
+        return np.log(self.standard_deviation) + log_scaled_mass(cut.a, cut.d) + HALF_LOG_2PI + square / 2
+
+    def support(self) -> Support:
+        return Support(self.lower, self.upper)
