@@ -2,7 +2,6 @@
 
 from typing import Any
 
-from mpmath import binomial as choose
 from mpmath import exp, expm1, inf, log, log1p, loggamma, mp, mpf, sqrt
 
 from tests.data.reference_functions import Law, Real, beta_both, gamma_both
@@ -63,21 +62,41 @@ def geometric(success_probability: Real) -> Law:
 def hypergeometric(population: Real, marked: Real, draws: Real) -> Law:
     total, hits, n = int(population), int(marked), int(draws)
     low, high = max(0, n - (total - hits)), min(n, hits)
-    mass = [choose(hits, low) * choose(total - hits, n - low) / choose(total, n)]
-    for k in range(low, high):
-        mass.append(mass[-1] * (hits - k) * (n - k) / ((k + 1) * mpf(total - hits - n + k + 1)))
+    mean = mpf(n) * hits / total
+
+    def log_ways(size: int, some: int) -> Real:
+        return loggamma(mpf(size + 1)) - loggamma(mpf(some + 1)) - loggamma(mpf(size - some + 1))
+
+    def mass(k: Real) -> Real:
+        return exp(log_ways(hits, int(k)) + log_ways(total - hits, n - int(k)) - log_ways(total, n))
+
+    def ratio(k: int) -> Real:
+        """mass(k + 1)/mass(k)."""
+        return mpf((hits - k) * (n - k)) / ((k + 1) * (total - hits - n + k + 1))
+
+    def outwards(k: int, step: int) -> Real:
+        """Sum of the masses from k on, upwards or downwards."""
+        sum_ = term = mass(k)
+        while low <= k + step <= high and term > sum_ * mp.eps:
+            term = term * ratio(k) if step > 0 else term / ratio(k - 1)
+            sum_ += term
+            k += step
+        return sum_
 
     def both(k: Real) -> tuple[Real, Real]:
-        i = int(k) - low + 1
-        return mp.fsum(mass[:i]), mp.fsum(mass[i:])
+        if k < mean:
+            small = outwards(int(k), -1)
+            return small, 1 - small
+        small = outwards(int(k) + 1, 1)
+        return 1 - small, small
 
     def moments() -> tuple[Real, Real, Real, Real]:
-        mean = mpf(n) * hits / total
-        v, third, fourth = (mp.fsum(m * (low + i - mean) ** j for i, m in enumerate(mass)) for j in (2, 3, 4))
+        masses = [mass(k) for k in range(low, high + 1)]
+        v, third, fourth = (mp.fsum(m * (low + i - mean) ** j for i, m in enumerate(masses)) for j in (2, 3, 4))
         symmetric = 2 * hits == total or 2 * n == total
         return mean, v, mpf(0) if symmetric else third / v ** mpf(1.5), fourth / v**2 - 3
 
-    return Law(lambda k: mass[int(k) - low], both, (mpf(low), mpf(high)), moments, discrete=True)
+    return Law(mass, both, (mpf(low), mpf(high)), moments, discrete=True)
 
 
 def poisson(rate: Real) -> Law:
