@@ -51,6 +51,7 @@ FAULTS = {
     "horizon_not_available": "The law of so many periods is not available for this return model.",
     "predictive_not_available": "The uncertainty of the estimates cannot be included for this return model.",
     "must_add_up_to_one": "The weights must add up to 1.",
+    "expansion_not_monotone": "The Cornish-Fisher expansion with these parameters falls somewhere and gives no law.",
     "not_a_correlation_matrix": "Correlations must be symmetric, 1 on the diagonal, and without a negative eigenvalue.",
     "no_event": "An event needs a bound.",
     "bounds_do_not_go_together": "These bounds cannot describe one event.",

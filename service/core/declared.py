@@ -9,7 +9,7 @@ import numpy as np
 
 from service.core.arrays import Numbers, number
 from service.core.errors import DoesNotFit, Refusal
-from service.core.parameters import Declaration, Order, Parameter
+from service.core.parameters import Declaration, Parameter, Rule
 
 Convert = Callable[..., dict[str, Numbers]]
 
@@ -19,7 +19,7 @@ class Parameterisation:
     """One way to give the parameters; `convert` turns it into the first way (None: it is the first)."""
 
     parameters: Mapping[str, Declaration]
-    rules: tuple[Order, ...] = ()
+    rules: tuple[Rule, ...] = ()
     convert: Convert | None = None
 
     @cached_property
@@ -28,7 +28,7 @@ class Parameterisation:
         return frozenset(name for name, parameter in self.parameters.items() if not isinstance(parameter, Parameter))
 
 
-def alternative(convert: Convert, rules: tuple[Order, ...] = (), **parameters: Declaration) -> Parameterisation:
+def alternative(convert: Convert, rules: tuple[Rule, ...] = (), **parameters: Declaration) -> Parameterisation:
     """Declare another way to give the parameters of a class: `convert` takes them by name."""
     for name, parameter in parameters.items():
         parameter.name = name
@@ -42,7 +42,7 @@ class Declared:
     """
 
     name: ClassVar[str] = ""
-    rules: ClassVar[tuple[Order, ...]] = ()
+    rules: ClassVar[tuple[Rule, ...]] = ()
     alternatives: ClassVar[tuple[Parameterisation, ...]] = ()
     parameterisations: ClassVar[tuple[Parameterisation, ...]] = ()
 

@@ -256,3 +256,39 @@ def test_a_family_without_a_form_of_its_own_says_so() -> None:
     for call in calls:
         with pytest.raises(NotImplementedError):
             call()
+
+
+@pytest.mark.parametrize(
+    ("skewness", "excess", "path", "least", "most"),
+    [
+        (2.6, 10, ("skewness",), -2.48528, 2.48528),
+        (0, -0.1, ("excess_kurtosis",), 0, 8),
+        (0, 8.1, ("excess_kurtosis",), 0, 8),
+        (1, 1, ("excess_kurtosis",), 1.56905, 8.8754),
+        ([0, 1], [1, 0], ("excess_kurtosis", 1), 1.56905, 8.8754),
+        ([0, -2.7], 2, ("skewness", 1), -2.48528, 2.48528),
+        ([0, 2], 1, ("excess_kurtosis",), 6.53711, 11.24067),
+    ],
+)
+def test_an_expansion_that_falls_somewhere_is_refused(
+    skewness: Any, excess: Any, path: tuple[Any, ...], least: float, most: float
+) -> None:
+    """The region of Maillard (2012): 4 (1 + 11 s/36 -+ sqrt(1 - s/6 + s^2/1296)), s the square of the skewness."""
+    with pytest.raises(DoesNotFit) as refused:
+        law("cornish_fisher", mean=0, standard_deviation=1, skewness=skewness, excess_kurtosis=excess)
+    (refusal,) = refused.value.refusals
+    assert (refusal.path, refusal.code) == (path, "expansion_not_monotone")
+    assert (refusal.params["at_least"], refusal.params["at_most"]) == pytest.approx((least, most), rel=1e-5, abs=1e-12)
+
+
+def test_the_edge_of_the_monotone_region_is_allowed() -> None:
+    plain = law("cornish_fisher", mean=0, standard_deviation=1, skewness=0, excess_kurtosis=0)
+    steep = law("cornish_fisher", mean=1, standard_deviation=1, skewness=0, excess_kurtosis=8)
+    with np.errstate(all="ignore"):
+        assert plain.entropy() == pytest.approx(0.5 * np.log(2 * np.pi * np.e), rel=1e-14, abs=0)
+        assert steep.most_likely() == 1
+        assert steep.density(number(1.0)) == np.inf
+        assert steep.tails(number(1.0)).at_most == 0.5
+        # w(z) = z^3/3: E log w'(Z) = E log Z^2 = -log 2 - Euler's constant
+        exact = 0.5 * np.log(2 * np.pi * np.e) - np.log(2) - np.euler_gamma
+        assert steep.entropy() == pytest.approx(exact, rel=1e-12, abs=0)

@@ -218,9 +218,9 @@ def laws_by_numbers(draw: st.DrawFn, kind: type[Family]) -> dict[str, Any]:
 
 
 def same(together: Numbers, alone: list[Numbers]) -> None:
-    """Equal but for the last bits of differently ordered sums."""
+    """Equal but for the last bits of differently ordered sums (the excess kurtosis is such a sum less 3)."""
     for one, other in zip(np.broadcast_to(together, (3,)), alone, strict=True):
-        assert one == pytest.approx(float(other), rel=1e-14, abs=2e-15, nan_ok=True)
+        assert one == pytest.approx(float(other), rel=2e-14, abs=2e-14, nan_ok=True)
 
 
 @pytest.mark.parametrize(

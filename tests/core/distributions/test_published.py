@@ -8,11 +8,10 @@ import numpy as np
 import pytest
 
 from service.core.arrays import number
-from service.core.distributions import FAMILIES, quantile
+from service.core.distributions import quantile
 from tests.core.distributions.laws import law
 
 ROWS: list[dict[str, Any]] = json.loads((Path(__file__).parents[2] / "data" / "tables.json").read_text())["rows"]
-ROWS = [row for row in ROWS if row["family"] in FAMILIES]
 
 
 def figure(row: dict[str, Any]) -> float:
