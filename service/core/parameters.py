@@ -2,7 +2,7 @@
 
 from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass
-from typing import Any, TypeAlias, overload
+from typing import Any, Protocol, TypeAlias, overload
 
 import numpy as np
 
@@ -185,6 +185,17 @@ class Components(Declaration):
             return []
         detail = f"The {self.share}s of {self.name} must add up to 1; they add up to {total:.15g}."
         return [Refusal((self.name,), "must_add_up_to_one", detail, {"sum": total, "tolerance": SHARE_TOLERANCE})]
+
+
+class Rule(Protocol):
+    """A rule between the parameters of a class."""
+
+    @property
+    def words(self) -> str:
+        """The rule as it is printed in the reference."""
+
+    def refusals(self, values: Mapping[str, Numbers]) -> Iterator[Refusal]:
+        """Give the first entry that breaks the rule. `values`: float64 arrays that broadcast."""
 
 
 @dataclass(frozen=True, slots=True)
