@@ -29,7 +29,7 @@ class Returns:
     period: str = "year"
     periods_per_year: float | None = None
     compounding: str = "simple"
-    sample_size: Numbers | None = None
+    sample_size: Numbers | float | None = None
 
     def __post_init__(self) -> None:
         refusals = list(self.model.refusals(self.compounding))
@@ -102,7 +102,8 @@ def _sample_size(returns: Returns, periods: Numbers) -> Numbers:
     found = Limit("at_least", LEAST_SAMPLE).refusal("sample_size", returns.sample_size)
     if found:
         raise DoesNotFit([replace(found, path=("returns", *found.path))])
-    return returns.sample_size
+    size: Numbers = np.asarray(returns.sample_size, np.float64)[()]
+    return size
 
 
 def placed(refusal: Refusal, returns_at: tuple[str | int, ...]) -> Refusal:

@@ -7,6 +7,7 @@ import pytest
 
 from service.core.arrays import number
 from service.core.errors import DoesNotFit, Refusal
+from service.core.returns import Returns, law_of_horizon
 from service.core.returns.horizon import placed
 from tests.core.returns.build import law, returns
 
@@ -80,6 +81,12 @@ def test_a_predictive_law_needs_a_sample_size_of_four() -> None:
     small = refusal(**NORMAL, uncertainty="predictive", sample_size=3)
     assert (small.path, small.code) == (("returns", "sample_size"), "must_be_at_least")
     assert np.isfinite(law(**NORMAL, uncertainty="predictive", sample_size=4).standard_deviation())
+
+
+def test_a_sample_size_may_be_a_plain_whole_number() -> None:
+    plain = Returns(returns(**NORMAL).model, sample_size=10)
+    found = law_of_horizon(plain, 1, "predictive").probability_below(number(-0.2))
+    assert found == law(**NORMAL, uncertainty="predictive", sample_size=10).probability_below(number(-0.2))
 
 
 def test_a_refusal_about_the_returns_is_led_to_where_they_stand() -> None:
