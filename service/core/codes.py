@@ -78,10 +78,12 @@ CAUTIONS = {
     "independence_assumed": "The correlations of the portfolios are not given; their returns are taken as independent.",
     "estimates_taken_as_true": "Expected return and risk are taken as known; a return one point lower changes the "
     "answer.",
+    "unusual_level": "A tail is usually the smaller part of all outcomes: levels above 0.5, probabilities below.",
     "looks_like_percent": "A figure was perhaps meant in per cent: 5 for 0.05.",
 }
 
 NULL_REASONS = {
+    "none_admissible": "No portfolio is admissible, so none leads.",
     "needs_shade": "The figure needs shade: the event to shade.",
     "no_rank": "The portfolio is not admissible, or the criterion has no value for it.",
     "needs_sample_size": "The figure needs sample_size: the periods behind the estimates.",

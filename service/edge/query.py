@@ -25,10 +25,12 @@ class FlatQuery:
         self.question = question
         self.homes: dict[str, str | None] = {}
         self.lists: set[str] = set()
+        self.only_in_post: set[str] = {"questions"} if question.batch else set()
         for name, field in question.fields.items():
             members = getattr(field, "members", None)
             self.homes.update({name: None} if members is None else dict.fromkeys(members, name))
             self.lists |= getattr(field, "lists", frozenset())
+            self.only_in_post |= getattr(field, "only_in_post", frozenset())
 
     def ask(self, raw: bytes) -> Asked:
         """Read a query's bytes as sent. Raises Unreadable or ValidationError."""
@@ -53,7 +55,7 @@ class FlatQuery:
             name, value = _pair(part)
             if name in seen:
                 faults[OF_QUERY + name] = [Fault("given_twice", f"{shown(name)} stands twice; a list has commas.")]
-            elif name == "components" or (name == "questions" and self.question.batch):
+            elif name in self.only_in_post:
                 faults[OF_QUERY + name] = [Fault("only_in_post", f"{name} can be sent by POST alone.")]
             elif name not in self.homes:
                 faults[OF_QUERY + name] = [unknown(name, self.homes)]

@@ -13,8 +13,11 @@ from typing import Any
 import orjson
 
 DEEPEST = 32
-ALL_DIGITS_NOUGHT = bytes(ord("0") if chr(code).isdecimal() and code < 128 else code for code in range(256))
-LONG_DIGITS = b"0" * 20
+SHAPES = bytes(
+    ord("0") if chr(code) in "0123456789" else ord(",") if chr(code) in "[,:- \t\r\n" else code for code in range(256)
+)
+"""Maps every digit to 0 and whatever may stand before a number to a comma: fractions are told from integers."""
+LONG = b"," + b"0" * 20
 LONG_INTEGER = re.compile(rb'"(?:[^"\\]|\\.)*"|(?<![0-9.eE+-])-?[0-9]{20,}(?![0-9.eE])')
 
 
@@ -39,7 +42,7 @@ def read(body: bytes) -> Any:
     if type(value) is dict or type(value) is list:
         if body.count(b":") != _count_keys(value, 1):
             json.loads(body, object_pairs_hook=_refuse_duplicates)
-        if LONG_DIGITS in body.translate(ALL_DIGITS_NOUGHT):
+        if LONG in body.translate(SHAPES):
             _refuse_long_integers(body)
     return value
 

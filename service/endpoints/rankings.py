@@ -6,13 +6,13 @@ from service.core.portfolio.criteria import CRITERIA
 from service.core.portfolio.question import RankingQuestion as CoreQuestion
 from service.core.portfolio.ranking import rank
 from service.endpoints.declaration import endpoint
-from service.schemas.answers import Result, write_plain
+from service.schemas.answers import Result
 from service.schemas.cautions import beside_shortfalls, sentence
 from service.schemas.fields import ChoiceField, GroupField, MatrixField, NumberField
 from service.schemas.floor_question import FloorQuestion, floor_of, settings_of, slips_in
 from service.schemas.portfolio import ColumnsField, PortfolioListField
 from service.schemas.question import Asked
-from service.schemas.ranking import COLUMNS, ROWS, ranking_cautions, ranking_values
+from service.schemas.ranking import COLUMNS, ROWS, ranking_cautions, ranking_values, write_ranking
 
 
 class RankingQuestion(FloorQuestion):
@@ -67,7 +67,7 @@ EXAMPLES = {
     answers=(ROWS, COLUMNS),
     examples=EXAMPLES,
     batch=False,
-    write=write_plain,
+    write=write_ranking,
 )
 def rankings(asked: Asked) -> Result:
     """Which portfolio is the safest for this floor?"""

@@ -142,6 +142,10 @@ class Writer:
 
     def _array(self, value: Any, pointer: str, length: int) -> Any:
         full = np.broadcast_to(value, (length,)) + 0.0  # orjson prints entries that are not finite as null
+        with np.errstate(all="ignore"):
+            total = full.sum()
+        if math.isfinite(total):  # then every entry is; an overflow of the sum is looked at closely
+            return full
         finite = np.isfinite(full)
         if finite.all():
             return full

@@ -3,11 +3,14 @@
 from typing import Any
 
 from service.core.declared import Declared, Parameterisation
-from service.core.parameters import Declaration, Parameter
+from service.core.parameters import Components, Declaration, Parameter
 from service.schemas.declared import first_sentence
 from service.schemas.shapes import TEXT, open_object
 
 LIMIT = {"type": ["number", "null"], "format": "double"}
+RELATIONS = ("above", "at_least", "below", "at_most")
+LIMITS = open_object(dict.fromkeys(RELATIONS, LIMIT), description="null where there is none")
+PART = open_object({"name": TEXT, "meaning": TEXT, "limits": LIMITS})
 PARAMETER = open_object(
     {
         "name": TEXT,
@@ -16,7 +19,8 @@ PARAMETER = open_object(
         "list": {"type": "boolean"},
         "whole": {"type": "boolean"},
         "default": LIMIT,
-        "limits": open_object(dict.fromkeys(("above", "at_least", "below", "at_most"), LIMIT)),
+        "limits": LIMITS,
+        "parts": {"type": "array", "items": PART, "description": "members of each entry, of a list of objects"},
         "example": {},
     }
 )
@@ -25,7 +29,7 @@ WAY = open_object({"parameters": {"type": "array", "items": PARAMETER}, "rules":
 
 def describe_parameter(parameter: Declaration) -> dict[str, Any]:
     """Meaning, limits (null: none) and example of one parameter."""
-    limits = {limit.relation: limit.bound for limit in getattr(parameter, "limits", ())}
+    parts = parameter.parts.values() if isinstance(parameter, Components) else ()
     return {
         "name": parameter.name,
         "meaning": parameter.meaning,
@@ -33,9 +37,16 @@ def describe_parameter(parameter: Declaration) -> dict[str, Any]:
         "list": not isinstance(parameter, Parameter),
         "whole": getattr(parameter, "whole", False),
         "default": parameter.default,
-        "limits": {relation: limits.get(relation) for relation in ("above", "at_least", "below", "at_most")},
+        "limits": describe_limits(parameter),
+        "parts": [{"name": part.name, "meaning": part.meaning, "limits": describe_limits(part)} for part in parts],
         "example": parameter.example,
     }
+
+
+def describe_limits(parameter: Declaration) -> dict[str, float | None]:
+    """Give every limit by its relation, null where there is none."""
+    limits = {limit.relation: limit.bound for limit in getattr(parameter, "limits", ())}
+    return {relation: limits.get(relation) for relation in RELATIONS}
 
 
 def describe_way(way: Parameterisation) -> dict[str, Any]:

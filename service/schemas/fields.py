@@ -57,6 +57,11 @@ class StrictField(Field[Any]):
         """Names in a flat query that are lists even with one entry."""
         return frozenset()
 
+    @property
+    def only_in_post(self) -> frozenset[str]:
+        """Members that a flat query cannot hold."""
+        return frozenset()
+
     def read(self, value: Any) -> Any:
         """Turn a JSON value into what the core takes. Raises ValidationError."""
         raise NotImplementedError

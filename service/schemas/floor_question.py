@@ -8,7 +8,7 @@ from service.core.portfolio.floor import Floor
 from service.schemas.answers import Caution
 from service.schemas.fields import ChoiceField, LevelsField, NumberField
 from service.schemas.question import Asked, Question
-from service.schemas.slips import spread_in_percent, threshold_in_percent
+from service.schemas.slips import spread_in_percent, threshold_in_percent, unusual_levels
 
 DEFAULT_LEVELS = (0.95, 0.99)
 DEFAULT_QUANTILE_PROBABILITY = 0.05
@@ -63,8 +63,10 @@ def settings_of(asked: Asked) -> dict[str, Any]:
 
 
 def slips_in(asked: Asked, models: Mapping[str, Any]) -> list[Caution]:
-    """Find a threshold or a volatility that was perhaps meant in per cent; `models` by pointer."""
+    """Find figures that look like a slip: in per cent, or of the other tail. `models` by pointer."""
+    settings = settings_of(asked)
     found = threshold_in_percent(asked["threshold"])
+    found += unusual_levels(settings["confidence_levels"], settings["quantile_probability"])
     for pointer, model in models.items():
         found += spread_in_percent(vars(model), "expected_return", "volatility", pointer)
     return found

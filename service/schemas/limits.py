@@ -9,6 +9,8 @@ class Limits:
 
     entries: int = 100_000
     """Numbers in one array."""
+    components: int = 100
+    """Components of a mixture."""
     questions: int = 1_000
     """Questions in one batch."""
     portfolios: int = 100_000

@@ -7,8 +7,8 @@ from marshmallow import ValidationError
 
 from service.core.arrays import Numbers
 from service.core.errors import DoesNotFit
-from service.core.parameters import Declaration, Parameter, Sample
-from service.schemas.faults import as_messages, refuse
+from service.core.parameters import Components, Declaration, Parameter, Sample
+from service.schemas.faults import as_messages, refuse, required, unknown
 from service.schemas.limits import Limits
 
 LARGEST_EXACT = 2**53
@@ -69,6 +69,8 @@ def read_parameter(parameter: Declaration, value: Any, limits: Limits, arrays: b
         if type(value) is not list:
             raise refuse("not_an_array", "A JSON array of numbers is needed.")
         read: float | Numbers = read_array(value, limits.entries)
+    elif isinstance(parameter, Components):
+        read = _read_components(parameter, value, limits)
     else:
         whole = isinstance(parameter, Parameter) and parameter.whole
         if type(value) is not list:
@@ -83,6 +85,51 @@ def read_parameter(parameter: Declaration, value: Any, limits: Limits, arrays: b
     return read
 
 
+def _read_components(parameter: Components, value: Any, limits: Limits) -> Numbers:
+    """Read a list of parts, each an object of numbers."""
+    if type(value) is not list:
+        raise refuse("not_an_array", "A JSON array of objects is needed.")
+    if not value:
+        raise refuse("empty", "A list needs an entry.")
+    if len(value) > limits.components:
+        raise refuse(
+            "too_many",
+            f"At most {limits.components} entries; these are {len(value)}.",
+            given=len(value),
+            limit=limits.components,
+        )
+    rows, faults = [], {}
+    for index, entry in enumerate(value):
+        try:
+            rows.append(_read_part(parameter, entry))
+        except ValidationError as error:
+            faults[index] = error.messages
+    if faults:
+        raise ValidationError(faults)
+    return parameter.as_numbers(rows)
+
+
+def _read_part(parameter: Components, entry: Any) -> dict[str, float]:
+    if type(entry) is not dict:
+        raise refuse("not_an_object", "A JSON object is needed.")
+    row: dict[str, float] = {}
+    faults: dict[str, Any] = {}
+    for name in entry:
+        if name not in parameter.parts:
+            faults[name] = [unknown(name, parameter.parts, [n for n in parameter.parts if entry.get(n) is None])]
+    for name in parameter.parts:
+        if entry.get(name) is None:
+            faults[name] = [required(name)]
+            continue
+        try:
+            row[name] = read_number(entry[name])
+        except ValidationError as error:
+            faults[name] = error.messages
+    if faults:
+        raise ValidationError(faults)
+    return row
+
+
 def parameter_schema(parameter: Declaration, limits: Limits, arrays: bool = True) -> dict[str, Any]:
     """Print a declared parameter as JSON Schema, its limits as assertions and its default in words."""
     words = parameter.meaning
@@ -90,7 +137,11 @@ def parameter_schema(parameter: Declaration, limits: Limits, arrays: bool = True
         words += f" (default {parameter.default:.15g})"
     if isinstance(parameter, Sample):
         return number_list(limits, least=parameter.least_count) | {"description": words}
-    assert isinstance(parameter, Parameter)  # noqa: S101 - the two kinds there are
+    if isinstance(parameter, Components):
+        parts = {name: number_schema(part) | {"description": part.meaning} for name, part in parameter.parts.items()}
+        row = {"type": "object", "properties": parts, "required": list(parts), "additionalProperties": False}
+        return {"type": "array", "items": row, "minItems": 1, "maxItems": limits.components, "description": words}
+    assert isinstance(parameter, Parameter)  # noqa: S101 - the kinds there are
     one = number_schema(parameter)
     if not arrays:
         return one | {"description": words}

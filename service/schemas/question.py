@@ -164,7 +164,7 @@ def refuse_arrays(loaded: Mapping[str, Any]) -> None:
 def arrays_of(loaded: Mapping[str, Any]) -> Iterator[tuple[tuple[str, ...], Any]]:
     """Give every array of a question that sets its length, with the way to it."""
     for name, value in loaded.items():
-        if type(value) is np.ndarray:
+        if type(value) is np.ndarray and value.ndim == 1:  # a matrix is no list of questions
             yield (name,), value
         elif type(value) is Given:
             for inner, number in value.numbers.items():

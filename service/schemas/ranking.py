@@ -7,7 +7,7 @@ import numpy as np
 
 from service.core.portfolio.criteria import CRITERIA
 from service.core.portfolio.question import Ranking
-from service.schemas.answers import AnswerShape, Caution, Plain, Ranks, Single
+from service.schemas.answers import AnswerShape, Caution, Plain, Ranks, Result, Single, write_plain
 from service.schemas.cautions import sentence
 from service.schemas.shapes import COUNT, ONE, TEXT, Each, Fixed, Group, Shape, open_object
 from service.schemas.shortfall import outcomes_shape, rows_of, shortfall_shape, shortfall_values
@@ -163,3 +163,8 @@ def _comparisons(found: Ranking, names: tuple[str | None, ...]) -> dict[str, Any
 def ranking_cautions(found: Ranking) -> list[Caution]:
     """Give the cautions that the ranking itself raises."""
     return [sentence(caution.code, None, **caution.params) for caution in found.cautions]
+
+
+def write_ranking(result: Result, length: int | None, fingerprint: str | None) -> dict[str, Any]:  # noqa: ARG001
+    """Write an answer whose figures are arrays where it has a length of its own: in columns, also of one portfolio."""
+    return write_plain(result, result.figures.get("length"), fingerprint)

@@ -1,6 +1,6 @@
 """Inputs that look like a slip: answered as asked, with a caution."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -9,6 +9,7 @@ from service.schemas.answers import Caution
 
 OFTEN_TOO_LARGE = 20
 """So many times the mean a spread of 1 or more looks like per cent beside decimals."""
+HALF = 0.5
 
 
 def spread_in_percent(given: Mapping[str, Any], centre: str, spread: str, pointer: str) -> list[Caution]:
@@ -31,6 +32,18 @@ def spread_in_percent(given: Mapping[str, Any], centre: str, spread: str, pointe
             place,
             {"given": width, "perhaps": width / 100, "occurrences": int(np.count_nonzero(looks))},
         )
+    ]
+
+
+def unusual_levels(levels: Sequence[float], quantile_probability: float) -> list[Caution]:
+    """Find levels at or below one half and a quantile probability at or above it: the other tail was perhaps meant."""
+    found = [(f"/confidence_levels/{at}", level) for at, level in enumerate(levels) if level <= HALF]
+    if quantile_probability >= HALF:
+        found.append(("/quantile_probability", quantile_probability))
+    words = "A tail is usually the smaller part of all outcomes; was {:.12g} meant?"
+    return [
+        Caution("unusual_level", words.format(1 - given), pointer, {"given": given, "perhaps": 1 - given})
+        for pointer, given in found
     ]
 
 

@@ -7,7 +7,9 @@ from typing import Any
 
 import pytest
 
+from service.core.distributions import FAMILIES
 from service.edge.settings import Settings, setting_names
+from tests.benchmarks.accuracy import errors
 from tests.conftest import Asker
 
 README = (Path(__file__).parent.parent.parent / "README.md").read_text()
@@ -76,3 +78,15 @@ def test_every_setting_is_described_with_its_default() -> None:
         value = getattr(defaults, name.removeprefix("SERVICE_").lower())
         written = "on" if value is True else "none" if value == () else str(value)
         assert shown.strip() == written
+
+
+def test_the_table_of_errors_is_measured() -> None:
+    shown = {
+        row[0]: row[1:] for row in re.findall(r"^\| `(\w+)`" + r" \| ([\d.e-]+)" * 6 + r" \|$", README, re.MULTILINE)
+    }
+    assert shown.keys() == FAMILIES.keys()
+    for family, row in shown.items():
+        for measured, printed in zip(errors(family), row, strict=True):
+            assert measured <= 3 * max(float(printed), 1e-16), (
+                family
+            )  # another processor may round the last bit otherwise

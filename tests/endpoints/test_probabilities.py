@@ -154,6 +154,60 @@ def test_infinite_figures_are_null_with_their_reason(ask: Asker) -> None:
             {"distribution": NORMAL | {"mean": [1, None]}, "event": {"below": 1}},
             {"/distribution/mean/1": "not_a_number"},
         ),
+        (
+            {"distribution": {"family": "normal_mixture", "components": []}, "event": {"below": 1}},
+            {"/distribution/components": "empty"},
+        ),
+        (
+            {"distribution": {"family": "normal_mixture", "components": {}}, "event": {"below": 1}},
+            {"/distribution/components": "not_an_array"},
+        ),
+        (
+            {"distribution": {"family": "normal_mixture", "components": [1] * 101}, "event": {"below": 1}},
+            {"/distribution/components": "too_many"},
+        ),
+        (
+            {
+                "distribution": {
+                    "family": "normal_mixture",
+                    "components": [
+                        5,
+                        {"weight": 0.5, "mean": "a", "standard_deviation": 1},
+                        {"weight": 0.5, "meen": 0, "standard_deviation": 1},
+                    ],
+                },
+                "event": {"below": 1},
+            },
+            {
+                "/distribution/components/0": "not_an_object",
+                "/distribution/components/1/mean": "not_a_number",
+                "/distribution/components/2/mean": "required",
+                "/distribution/components/2/meen": "unknown_field",
+            },
+        ),
+        (
+            {
+                "distribution": {
+                    "family": "normal_mixture",
+                    "components": [
+                        {"weight": 0.5, "mean": 0, "standard_deviation": 1},
+                        {"weight": 0.4, "mean": 0, "standard_deviation": 1},
+                    ],
+                },
+                "event": {"below": 1},
+            },
+            {"/distribution/components": "must_add_up_to_one"},
+        ),
+        (
+            {
+                "distribution": {
+                    "family": "normal_mixture",
+                    "components": [{"weight": 1, "mean": 0, "standard_deviation": -1}],
+                },
+                "event": {"below": 1},
+            },
+            {"/distribution/components/0/standard_deviation": "must_be_positive"},
+        ),
         ({"distribution": NORMAL | {"mean": [[1]]}, "event": {"below": 1}}, {"/distribution/mean/0": "not_a_number"}),
     ],
 )

@@ -132,6 +132,25 @@ def test_sample_size_tells_how_sure_the_leader_is(ask: Asker) -> None:
     assert {"pointer": "/confidence_in_leader", "reason": "needs_sample_size"} in without["null_reasons"]
 
 
+def test_columns_of_one_portfolio_are_still_columns(ask: Asker) -> None:
+    columns = {"model": "normal", "expected_return": 0.05, "volatility": 0.1}
+    answer = ask.answer(PATH, {"portfolio_columns": columns, "threshold": 0.02, "equally_likely_outcomes": 2})
+    assert answer["length"] == 1
+    assert answer["ranking_columns"]["volatility"] == [0.1]
+    assert len(answer["ranking_columns"]["outcomes"]) == 2
+
+
+def test_correlations_are_taken_with_rows_and_with_columns(ask: Asker) -> None:
+    correlations = [[1, 0.8, 0.5], [0.8, 1, 0.9], [0.5, 0.9, 1]]
+    columns = ask.answer(
+        PATH, {"portfolio_columns": COLUMNS | {"sample_size": 60}, "threshold": 0.02, "correlations": correlations}
+    )
+    portfolios = [each | {"returns": each["returns"] | {"sample_size": 60}} for each in HOUSEHOLD]
+    rows = ask.answer(PATH, {"portfolios": portfolios, "threshold": 0.02, "correlations": correlations})
+    assert columns["confidence_in_leader"] == rows["confidence_in_leader"]
+    assert "independence_assumed" not in [caution["code"] for caution in rows["cautions"]]
+
+
 def test_ten_thousand_portfolios_from_columns(ask: Asker) -> None:
     count = 10_000
     columns = {"model": "normal", "expected_return": np.linspace(0.0, 0.1, count).tolist(), "volatility": 0.1}

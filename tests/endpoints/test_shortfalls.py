@@ -86,6 +86,15 @@ def test_a_floor_and_a_volatility_in_per_cent_are_answered_with_a_caution(ask: A
     assert [c["pointer"] for c in found] == ["/threshold", "/portfolio/returns/volatility"]
 
 
+def test_levels_of_the_other_tail_are_answered_with_a_caution(ask: Asker) -> None:
+    question = {"portfolio": BALANCED, "threshold": 0, "confidence_levels": [0.05, 0.95], "quantile_probability": 0.95}
+    found = [c for c in ask.answer(PATH, question)["cautions"] if c["code"] == "unusual_level"]
+    assert [(c["pointer"], c["params"]["perhaps"]) for c in found] == [
+        ("/confidence_levels/0", 0.95),
+        ("/quantile_probability", pytest.approx(0.05)),
+    ]
+
+
 def test_the_horizon_of_laws_that_divide_is_free(ask: Asker) -> None:
     returns = {"model": "lognormal", "expected_return": 0.05, "volatility": 0.12}
     answer = ask.answer(PATH, {"portfolio": {"returns": returns}, "threshold": 0.02, "horizon_years": 2.5})
