@@ -12,6 +12,9 @@ from service.core.distributions.kernels.newton import newton_on_log_tail
 from service.core.distributions.kernels.normal_interval import Cut, log_cut_density, log_lower_share, log_scaled_mass
 from service.core.parameters import Order, anywhere, positive
 
+REACH = 40.0
+"""No double is as small as the chance of a value so many standard deviations beyond the most likely one."""
+
 
 def _distance(cut: Cut, tail: Numbers) -> Numbers:
     """Distance from the lower end within which the cut law has the mass `tail`: Newton on its log, in log distance."""
@@ -61,20 +64,28 @@ class TruncatedNormal(Family):
     upper = anywhere("the upper end", example=0.5)
     rules = (Order("lower", "upper"),)
 
-    @property
-    def _cut(self) -> Cut:
-        a, b = ((end - self.mean) / self.standard_deviation for end in (self.lower, self.upper))
-        return Cut(a, (self.upper - self.lower) / self.standard_deviation, b)
+    def _between(self, lower: Numbers, upper: Numbers) -> Cut:
+        a, b = ((end - self.mean) / self.standard_deviation for end in (lower, upper))
+        return Cut(a, (upper - lower) / self.standard_deviation, b)
 
     @property
-    def _mirrored(self) -> Cut:
-        a, d, b = self._cut
-        return Cut(-b, d, -a)
+    def _cut(self) -> Cut:
+        return self._between(self.lower, self.upper)
+
+    def _reached(self, x: Numbers) -> tuple[Numbers, Numbers]:
+        """The ends, or points beyond which no double finds any mass: distances from an end have to tell values apart."""
+        near, far = self.most_likely(), REACH * self.standard_deviation
+        return (
+            np.maximum(self.lower, np.minimum(near, x) - far),
+            np.minimum(self.upper, np.maximum(near, x) + far),
+        )
 
     def log_tails(self, x: Numbers) -> Tails:
         inside = np.clip(x, self.lower, self.upper)
-        below, above = ((side / self.standard_deviation) for side in (inside - self.lower, self.upper - inside))
-        return Tails(log_lower_share(below, self._cut), log_lower_share(above, self._mirrored))
+        lower, upper = self._reached(inside)
+        below, above = ((side / self.standard_deviation) for side in (inside - lower, upper - inside))
+        cut = self._between(lower, upper)
+        return Tails(log_lower_share(below, cut), log_lower_share(above, Cut(-cut.b, cut.d, -cut.a)))
 
     def log_density(self, x: Numbers) -> Numbers:
         cut = self._cut
@@ -84,11 +95,12 @@ class TruncatedNormal(Family):
 
     def quantile(self, probability: Numbers, upper: bool) -> Numbers:
         tail, lower = smaller_tail(probability, upper)
-        shape, (p, is_lower, a, d, b) = flat(tail, lower, *self._cut)
+        first, last = self._reached(self.most_likely())
+        shape, (p, is_lower, a, d, b) = flat(tail, lower, *self._between(first, last))
         from_below = is_lower > 0
         start = np.where(from_below, a, -b)
         distance = _distance(Cut(start, d, start + d), p).reshape(shape)[()] * self.standard_deviation
-        value = np.where(from_below.reshape(shape), self.lower + distance, self.upper - distance)
+        value = np.where(from_below.reshape(shape), first + distance, last - distance)
         return np.clip(value, self.lower, self.upper)
 
     def moments(self) -> Moments:
