@@ -73,7 +73,7 @@ class TruncatedNormal(Family):
         return self._between(self.lower, self.upper)
 
     def _reached(self, x: Numbers) -> tuple[Numbers, Numbers]:
-        """The ends, or points beyond which no double finds any mass: distances from an end have to tell values apart."""
+        """The ends, or points beyond which no double finds mass: distances from an end have to tell values apart."""
         near, far = self.most_likely(), REACH * self.standard_deviation
         return (
             np.maximum(self.lower, np.minimum(near, x) - far),
