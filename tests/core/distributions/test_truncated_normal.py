@@ -14,7 +14,8 @@ FAR = [law("truncated_normal", mean=0.06, standard_deviation=0.1, lower=-end, up
 @pytest.mark.parametrize("cut", FAR)
 @pytest.mark.parametrize("x", [-7.0, -1.0, 0.05, 0.3, 3.0, 7.5])
 def test_distant_ends_change_no_tail(cut: Family, x: float) -> None:
-    given, expected = cut.log_tails(number(x)), NORMAL.log_tails(number(x))
+    with np.errstate(all="ignore"):
+        given, expected = cut.log_tails(number(x)), NORMAL.log_tails(number(x))
     assert given.at_most == pytest.approx(expected.at_most, rel=1e-13)
     assert given.above == pytest.approx(expected.above, rel=1e-13)
 
@@ -34,4 +35,6 @@ def test_one_distant_end_beside_a_near_one() -> None:
         FAMILIES["truncated_normal"].parameterisations[0],
         {"mean": 0.06, "standard_deviation": 0.1, "lower": 0.06, "upper": 1e150},
     )
-    assert half.tails(number(0.3)).above == pytest.approx(2 * NORMAL.tails(number(0.3)).above, rel=1e-14)
+    with np.errstate(all="ignore"):
+        given, expected = half.tails(number(0.3)).above, 2 * NORMAL.tails(number(0.3)).above
+    assert given == pytest.approx(expected, rel=1e-14)
