@@ -5,7 +5,7 @@ from typing import NamedTuple
 import numpy as np
 
 from service.core.arrays import Numbers, number
-from service.core.distributions.events import Event, chances
+from service.core.distributions.events import within
 from service.core.distributions.family import Family
 from service.core.distributions.quantiles import quantile
 
@@ -36,7 +36,8 @@ class Description(NamedTuple):
 def describe(law: Family) -> Description:
     """Describe a law; its parameters may be arrays."""
     with np.errstate(all="ignore"):
-        mean, spread, skewness, excess = law.moments()
+        moments = law.moments()
+        mean, spread, skewness, excess = moments
         figures = (
             mean,
             spread * spread,
@@ -48,6 +49,6 @@ def describe(law: Family) -> Description:
             law.most_likely(),
             law.entropy(),
             *law.support(),
-            *(chances(law, Event(within=number(count))).probability for count in (1, 2, 3)),
+            *(within(law, number(count), moments).probability for count in (1, 2, 3)),
         )
         return Description(*(figure[()] for figure in np.broadcast_arrays(*figures)))

@@ -7,7 +7,7 @@ from typing import NamedTuple, Self
 import numpy as np
 
 from service.core.arrays import MINUS_INFINITY, NO_VALUE, Numbers, number
-from service.core.distributions.family import Family
+from service.core.distributions.family import Family, Moments
 from service.core.distributions.intervals import between
 from service.core.errors import DoesNotFit, Refusal
 
@@ -102,7 +102,7 @@ def chances(law: Family, event: Event) -> Chances:
     """
     with np.errstate(all="ignore"):
         if event.within is not None:
-            return _within(law, event.within)
+            return within(law, event.within, law.moments())
         mean, spread, _, _ = law.moments()
         # 0 * spread is nan for an infinite spread, which gives no score
         lower = None if event.lower is None else (event.lower - mean) / spread + 0 * spread
@@ -144,9 +144,12 @@ def _exactly(law: Family, x: Numbers) -> tuple[Numbers, Numbers, Numbers, Number
     return mass, complement, law.log_density(x), log_rest
 
 
-def _within(law: Family, count: Numbers) -> Chances:
-    """Mean - count sd <= X <= mean + count sd; nan where the law has no finite standard deviation."""
-    mean, spread, _, _ = law.moments()
+def within(law: Family, count: Numbers, moments: Moments) -> Chances:
+    """Mean - count sd <= X <= mean + count sd; nan where the law has no finite standard deviation.
+
+    `moments` are the law's own: whoever asks for several counts computes them once. Callers silence numpy.
+    """
+    mean, spread, _, _ = moments
     has_value = np.isfinite(spread) & np.isfinite(mean)
     reach = np.where(has_value, count * spread, 0)
     centre = np.where(has_value, mean, 0)

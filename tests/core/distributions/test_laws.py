@@ -8,7 +8,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from service.core.arrays import Numbers, number
-from service.core.distributions import FAMILIES, Family, quantile
+from service.core.distributions import FAMILIES, Event, Family, chances, quantile
 from service.core.distributions.kernels.quadrature import MEDIUM
 from service.core.parameters import Parameter
 from tests.core.distributions.laws import law, laws, plain, values
@@ -97,6 +97,27 @@ def test_the_quantile_inverts_both_tails(kind: type[Family], data: st.DataObject
     else:
         assert reached >= p * (1 - 2e-12) - 1e-12
         assert before.at_most < p * (1 + 2e-12)
+
+
+@EVERY_FAMILY
+@FEW
+@given(data=st.data())
+def test_intervals_lie_between_the_tails(kind: type[Family], data: st.DataObject) -> None:
+    asked = data.draw(laws(kind))
+    first, last = sorted(data.draw(st.lists(INNER, min_size=2, max_size=2)))
+    low, high = (float(asked.quantile(number(p), upper=False)) for p in (first, last))
+    if not np.isfinite([low, high]).all():
+        return
+    inside = chances(asked, Event.of({"above": low, "at_most": high}))
+    below, above = asked.tails(number(low)).at_most, asked.tails(number(high)).above
+    assert inside.probability + below + above == pytest.approx(1, rel=1e-12, abs=0)
+    assert inside.complement == pytest.approx(float(below + above), rel=1e-13, abs=0)
+    assert np.exp(inside.log_probability) == pytest.approx(float(inside.probability), rel=1e-11, abs=1e-307)
+    assert np.exp(inside.log_complement) == pytest.approx(float(inside.complement), rel=1e-11, abs=1e-307)
+    single = chances(asked, Event.of({"exactly": high}))
+    closed = chances(asked, Event.of({"at_least": high, "at_most": high}))
+    assert single.probability == pytest.approx(float(closed.probability), rel=1e-9, abs=1e-300)
+    assert single.probability + single.complement == pytest.approx(1, rel=1e-12, abs=0)
 
 
 @EVERY_FAMILY

@@ -10,6 +10,7 @@ from service.core.distributions.kernels.quadrature import MEDIUM
 
 PANELS = 8
 REACH = 10.5
+BLOCK = 1024
 
 
 def cut_moments(cut: Cut) -> Moments:
@@ -25,8 +26,9 @@ def cut_moments(cut: Cut) -> Moments:
     middle = a + d / 2
     narrow = ~wide & (d * np.maximum(1, np.abs(middle)) <= 2)
     for chosen, form in ((wide, _by_ends), (narrow, _by_parts), (~wide & ~narrow, _by_panels)):
-        i = np.flatnonzero(chosen)
-        if i.size:
+        every = np.flatnonzero(chosen)
+        for first in range(0, every.size, BLOCK):
+            i = every[first : first + BLOCK]
             figures[:, i] = form(Cut(a[i], d[i], b[i]))
     mean, variance, skewness, excess = (figure.reshape(shape)[()] for figure in figures)
     return Moments(mean, np.sqrt(variance), skewness, excess)

@@ -85,10 +85,12 @@ def log_hypergeometric_tails(
 
 def _log_sum(k: Numbers, n: Numbers, m: Numbers, d: Numbers, lower: Truths) -> Numbers:
     """Equal questions of a batch share one run outwards: all tails of a law follow from its farthest one."""
+    if k.size == 1:
+        return _outwards(k, n, m, d, lower)
     value = np.empty_like(k)
     laws, place = np.unique(np.stack([n, m, d, lower]), axis=1, return_inverse=True)
     place = place.ravel()
-    if laws.shape[1] == 1 and k.size > 1:
+    if laws.shape[1] == 1:
         return _one_law(k, n[0], m[0], d[0], bool(lower[0]))
     order = np.argsort(place, kind="stable")
     cuts = np.searchsorted(place[order], np.arange(laws.shape[1] + 1))

@@ -22,10 +22,10 @@ def log_scaled_mass(a: Numbers, d: Numbers) -> Numbers:
     mirrored = a + b < 0
     near, far = np.where(mirrored, -b, a), np.where(mirrored, -a, b)
     across = np.log(0.5 * (erf(far * ROOT_HALF) - erf(near * ROOT_HALF)))
-    fall = np.exp(-d * (near + d / 2))
+    fall = np.exp(np.minimum(-d * (near + d / 2), 0))
     apart = np.log(0.5 * (erfcx(near * ROOT_HALF) - fall * erfcx(far * ROOT_HALF)))
     t = MEDIUM.over(d)
-    close = np.log(d * MEDIUM.mean(np.exp(-t * (near + t / 2)))) - HALF_LOG_2PI
+    close = np.log(d * MEDIUM.mean(np.exp(np.minimum(-t * (near + t / 2), 1)))) - HALF_LOG_2PI
     # an interval across 0 has its peak there, the integral is scaled to its end
     close = close - np.square(np.minimum(near, 0)) / 2
     narrow = d * np.maximum(1, np.abs(near)) <= 1
