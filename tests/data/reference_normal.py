@@ -2,7 +2,7 @@
 
 from typing import Any
 
-from mpmath import chop, exp, expm1, inf, log, mp, mpf, pi, polyroots, quad, sqrt
+from mpmath import chop, exp, expm1, inf, log, mp, mpf, pi, quad, sqrt
 
 from tests.data.reference_functions import Law, Real, from_raw_moments, normal_both, normal_density, owen
 
@@ -110,18 +110,25 @@ def cornish_fisher(mean: Real, standard_deviation: Real, skewness: Real, excess_
     cubic = [k / 24 - s * s / 18, s / 6, 1 - k / 8 + 5 * s * s / 36, -s / 6]
 
     def w(z: Real) -> Real:
-        return mp.polyval(cubic, z)
+        return ((cubic[0] * z + cubic[1]) * z + cubic[2]) * z + cubic[3]
 
     def slope(z: Real) -> Real:
         return 3 * cubic[0] * z * z + 2 * cubic[1] * z + cubic[2]
 
     def score(x: Real) -> Real:
-        """The one real root of w(z) = (x - m)/v."""
-        coefficients = [*cubic[:3], cubic[3] - (x - m) / v]
-        while coefficients[0] == 0:
-            coefficients = coefficients[1:]
-        roots = polyroots(coefficients, maxsteps=500, extraprec=400)
-        return min(roots, key=lambda root: abs(mp.im(root))).real
+        """The one root of w(z) = (x - m)/v: halving, then Newton's steps."""
+        y = (x - m) / v
+        low, high = mpf(-1), mpf(1)
+        while w(low) > y:
+            low *= 2
+        while w(high) < y:
+            high *= 2
+        for _ in range(40):
+            z = (low + high) / 2
+            low, high = (z, high) if w(z) < y else (low, z)
+        for _ in range(8):
+            z -= (w(z) - y) / slope(z)
+        return z
 
     def moments() -> tuple[Real, Real, Real, Real]:
         raw = [quad(lambda z, j=j: w(z) ** j * normal_density(z), [-30, -10, 0, 10, 30]) for j in (1, 2, 3, 4)]

@@ -4,20 +4,32 @@ from typing import Any
 
 import numpy as np
 import pytest
-from mpmath import exp, expm1, log, log1p, loggamma, mp, mpf, pi
+from mpmath import exp, expm1, log, log1p, loggamma, mp, mpf, pi, quad
 
 from service.core.arrays import number
 from service.core.distributions.kernels.elementary import expm1_minus_x, log1p_minus_x, two_product
-from service.core.distributions.kernels.incomplete_beta import beta_offset, log_a_beta, log_beta_tails
-from service.core.distributions.kernels.incomplete_gamma import log_gamma_tails
+from service.core.distributions.kernels.incomplete_beta import (
+    beta_entropy,
+    beta_offset,
+    log_a_beta,
+    log_beta_tails,
+    odds_entropy,
+)
+from service.core.distributions.kernels.incomplete_gamma import gamma_entropy, log_gamma_tails
 from service.core.distributions.kernels.lattice import lattice_entropy, lattice_quantile, long_lattice_entropy
 from service.core.distributions.kernels.logarithms import log_complement, smaller_tail
 from service.core.distributions.kernels.newton import newton_on_log_tail
 from service.core.distributions.kernels.quadrature import FINE, MEDIUM, Rule
-from service.core.distributions.kernels.saddle_point import log_binomial_mass, log_poisson_mass, stirling_error
+from service.core.distributions.kernels.saddle_point import (
+    digamma_error,
+    log_binomial_mass,
+    log_gamma_1p,
+    log_poisson_mass,
+    stirling_error,
+)
 from service.core.distributions.kernels.student_t import log_t_tail, t_central, t_entropy
 from tests.core.distributions.laws import law
-from tests.data.make_reference import tails
+from tests.data.make_reference import make_law, tails
 from tests.data.reference_continuous import student_t
 from tests.data.reference_discrete import hypergeometric
 from tests.data.reference_functions import beta_both, gamma_both
@@ -265,3 +277,57 @@ def test_hypergeometric_tails_far_apart() -> None:
     assert wide.at_most[1] == pytest.approx(
         float(law("hypergeometric", population=1e6, marked=5e5, draws=5e5).log_tails(number(1e5)).at_most), rel=1e-14
     )
+
+
+@pytest.mark.parametrize("a", [1e-6, 1e-3, 0.3, 5, 11.9, 12.5, 1e4, 1e12])
+def test_errors_of_digamma_and_log_gamma(a: float) -> None:
+    with mp.workdps(60):
+        exact = log(mpf(a)) - 1 / (2 * mpf(a)) - mp.digamma(mpf(a))
+    assert digamma_error(number(a)) == pytest.approx(float(exact), rel=1e-15, abs=1e-15)
+    assert log_gamma_1p(number(a)) == pytest.approx(float(loggamma(1 + mpf(a))), rel=2e-15, abs=0)
+
+
+@pytest.mark.parametrize("a", [1e-3, 0.5, 2, 200, 1e6, 1e12])
+def test_gamma_and_beta_entropies(a: float) -> None:
+    with mp.workdps(60):
+        x = mpf(a)
+        exact = x + loggamma(x) + (1 - x) * mp.digamma(x)
+    assert gamma_entropy(number(a)) == pytest.approx(float(exact), rel=4e-15, abs=4e-15)
+    for b in (1e-3, 3, 1e7):
+        with mp.workdps(60):
+            y, n = mpf(b), mpf(a) + mpf(b)
+            log_beta = loggamma(x) + loggamma(y) - loggamma(n)
+            psi = {z: mp.digamma(z) for z in (x, y, n)}
+            beta = log_beta - (x - 1) * psi[x] - (y - 1) * psi[y] + (n - 2) * psi[n]
+            noise = 2e-14 + 2e-16 / min(a, b)
+            odds = log_beta - (x - 1) * (psi[x] - psi[y]) + n * (psi[n] - psi[y])
+        assert beta_entropy(number(a), number(b)) == pytest.approx(float(beta), rel=4e-15, abs=noise)
+        assert odds_entropy(number(a), number(b)) == pytest.approx(float(odds), rel=4e-15, abs=noise)
+
+
+def entropy_by_integration(density: Any, cuts: list[float]) -> float:
+    def share(x: Any) -> Any:
+        f = density(x)
+        return -f * log(f) if f > 0 else mpf(0)
+
+    with mp.workdps(30):
+        return float(quad(share, cuts))
+
+
+@pytest.mark.parametrize(
+    ("family", "parameters", "cuts"),
+    [
+        ("skew_normal", {"location": 0, "scale": 1, "shape": 4}, [-6, -1, -0.3, 0, 0.3, 1, 3, 12]),
+        ("skew_normal", {"location": 0, "scale": 1, "shape": 200}, [-0.1, -0.02, 0, 0.004, 0.02, 0.1, 1, 3, 12]),
+        ("truncated_normal", {"mean": 0, "standard_deviation": 1, "lower": -1, "upper": 2}, [-1, 0, 2]),
+        ("truncated_normal", {"mean": 0, "standard_deviation": 1, "lower": 8, "upper": 10}, [8, 8.2, 8.6, 10]),
+        ("cornish_fisher", {"mean": 0, "standard_deviation": 1, "skewness": 1.5, "excess_kurtosis": 5},
+         [-300, -60, -20, -9, -3, -1.5, -1, -0.5, 0, 1, 3, 9, 40, 150, 600]),
+        ("normal_mixture", {"components": [{"weight": 0.5, "mean": -2, "standard_deviation": 1},
+                                           {"weight": 0.5, "mean": 2, "standard_deviation": 0.5}]},
+         [-13, -4, -2, 0, 1, 2, 3, 6, 13]),
+    ],
+)  # fmt: skip
+def test_entropies_without_a_closed_form(family: str, parameters: dict[str, Any], cuts: list[float]) -> None:
+    exact = entropy_by_integration(make_law(family, parameters).density, cuts)
+    assert law(family, **parameters).entropy() == pytest.approx(exact, rel=1e-11, abs=0)

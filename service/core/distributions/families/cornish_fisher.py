@@ -67,7 +67,7 @@ class CornishFisher(Family):
 
     name = "cornish_fisher"
     support_words = "every number"
-    numerical_error = 1e-12
+    numerical_error = 1e-13
     mean = anywhere("the mean", example=0.05)
     standard_deviation = positive("the scale of the expansion", example=0.2)
     skewness = Parameter("the skewness put into the expansion", at_least=-3, at_most=3, example=-0.5)

@@ -20,7 +20,7 @@ class DiscreteUniform(Family):
     name = "discrete_uniform"
     discrete = True
     support_words = "the whole numbers from lowest to highest"
-    numerical_error = 1e-15
+    numerical_error = 4e-15
     lowest = Parameter("the least value", whole=True, at_least=-1e15, at_most=1e15, example=1)
     highest = Parameter("the greatest value", whole=True, at_least=-1e15, at_most=1e15, example=6)
     rules = (Order("lowest", "highest", or_equal=True),)

@@ -24,7 +24,7 @@ class Empirical(Family):
     support_words = "the observations"
     method = "counting"
     quantile_method = "counting"
-    numerical_error = 1e-14
+    numerical_error = 4e-15
     observations = Sample("values seen so far", example=[-0.12, 0.03, 0.05, 0.05, 0.11, 0.21])
 
     @cached_property

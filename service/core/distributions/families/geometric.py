@@ -21,7 +21,7 @@ class Geometric(Family):
     name = "geometric"
     discrete = True
     support_words = "the whole numbers from 1"
-    numerical_error = 1e-13
+    numerical_error = 4e-15
     success_probability = positive("the probability of success of each trial", at_most=1, example=0.2)
 
     @property

@@ -17,7 +17,7 @@ class Gumbel(Family):
 
     name = "gumbel"
     support_words = "every number"
-    numerical_error = 1e-13
+    numerical_error = 2e-15
     location = anywhere("the most likely value", example=0.02)
     scale = positive("the width", example=0.05)
 

@@ -25,7 +25,7 @@ class Lognormal(Family):
 
     name = "lognormal"
     support_words = "x > 0"
-    numerical_error = 1e-14
+    numerical_error = 1e-13
     log_mean = Parameter("the mean of log X", at_least=-200, at_most=200, example=0.05)
     log_standard_deviation = positive("the standard deviation of log X", at_most=10, example=0.2)
     alternatives = (

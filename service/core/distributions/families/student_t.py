@@ -19,14 +19,15 @@ class StudentT(Family):
     """Bell-shaped with heavy tails: returns with more extreme days than the normal law admits.
 
     The smaller tail by the incomplete beta function, by quadrature of its log-concave form or by its power series
-    (see `log_t_tail`). Against mpmath: 1e-14 relative in the body, 2e-13 at 1e-300; quantiles 1e-13.
+    (see `log_t_tail`). Against mpmath: 1e-14 relative in the body, 2e-13 at 1e-300; quantiles 5e-13
+    (degrees of freedom 0.001), 3e-14 from 1 on.
     """
 
     name = "student_t"
     support_words = "every number"
     method = "saddle_point_and_quadrature"
     quantile_method = "newton_on_log_tail"
-    numerical_error = 1e-13
+    numerical_error = 1e-12
     degrees_of_freedom = positive("the fewer, the heavier the tails", at_least=1e-3, at_most=1e15, example=5)
     location = anywhere("the centre", example=0.05, default=0)
     scale = positive("the width", example=0.15, default=1)

@@ -1,12 +1,13 @@
 """Quantile of the gamma law in either tail."""
 
 import numpy as np
-from scipy.special import gammaln, ndtri_exp
+from scipy.special import ndtri_exp
 
 from service.core.arrays import Numbers, Truths, flat
 from service.core.distributions.kernels.incomplete_gamma import log_gamma_density, log_gamma_tails
 from service.core.distributions.kernels.logarithms import log_complement
 from service.core.distributions.kernels.newton import newton_on_log_tail
+from service.core.distributions.kernels.saddle_point import log_gamma_1p
 
 LEAST_LOG, GREATEST_LOG = -745.0, 709.0
 
@@ -21,7 +22,7 @@ def gamma_quantile(a: Numbers, tail: Numbers, lower: Truths) -> Numbers:
     target = np.log(tail)
     below = is_lower > 0
     log_at_most = np.where(below, target, log_complement(target))
-    power = (log_at_most + gammaln(a + 1)) / a
+    power = (log_at_most + log_gamma_1p(a)) / a
     value = np.exp(np.minimum(power, 0.0))
     start = _start(a, target, below, power)
     for side in (True, False):

@@ -1,13 +1,13 @@
 """Both tails of the beta law, as logarithms, for any shapes."""
 
 import numpy as np
-from scipy.special import betainc, betaincc, gammaln
+from scipy.special import betainc, betaincc
 
 from service.core.arrays import Numbers, flat
 from service.core.distributions.kernels.elementary import LOG_2PI, expm1_minus_x, log1p_minus_x, two_product
 from service.core.distributions.kernels.logarithms import log_complement
 from service.core.distributions.kernels.quadrature import FINE, MEDIUM, Rule
-from service.core.distributions.kernels.saddle_point import deviance, digamma_error, stirling_error
+from service.core.distributions.kernels.saddle_point import deviance, digamma_error, log_gamma_1p, stirling_error
 
 TINY = 1e-290
 MOST_TERMS = 3000
@@ -46,7 +46,7 @@ def log_a_beta(a: Numbers, b: Numbers) -> Numbers:
     """Give log(a B(a, b)); for a < 1 and b >= 10 in a form whose error falls with a, as a power law divides it by a."""
     n = a + b
     ratio = (b - 0.5) * np.log1p(a / b) + a * np.log(n) - a + stirling_error(n) - stirling_error(b)
-    return np.where((a < 1) & (b >= 10), gammaln(1 + a) - ratio, np.log(a) + log_beta(a, b))[()]
+    return np.where((a < 1) & (b >= 10), log_gamma_1p(a) - ratio, np.log(a) + log_beta(a, b))[()]
 
 
 def log_beta_tails(a: Numbers, b: Numbers, x: Numbers, y: Numbers, offset: Numbers) -> tuple[Numbers, Numbers]:
