@@ -292,3 +292,19 @@ def test_the_edge_of_the_monotone_region_is_allowed() -> None:
         # w(z) = z^3/3: E log w'(Z) = E log Z^2 = -log 2 - Euler's constant
         exact = 0.5 * np.log(2 * np.pi * np.e) - np.log(2) - np.euler_gamma
         assert steep.entropy() == pytest.approx(exact, rel=1e-12, abs=0)
+
+
+@pytest.mark.parametrize(
+    ("ends", "path"),
+    [
+        ({"lower": 2e6, "upper": 3e6}, ("lower",)),
+        ({"lower": -3e6, "upper": -2e6}, ("upper",)),
+        ({"lower": -3e6, "upper": [2e6, -2e6]}, ("upper", 1)),
+    ],
+)
+def test_a_truncation_out_of_reach_is_refused(ends: dict[str, Any], path: tuple[Any, ...]) -> None:
+    with pytest.raises(DoesNotFit) as refused:
+        law("truncated_normal", mean=0, standard_deviation=1, **ends)
+    (refusal,) = refused.value.refusals
+    assert (refusal.path, refusal.code) == (path, "not_representable")
+    assert law("truncated_normal", mean=0, standard_deviation=1, lower=1e6, upper=2e6).moments().mean >= 1e6

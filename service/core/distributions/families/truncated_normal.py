@@ -1,5 +1,7 @@
 """The truncated normal distribution."""
 
+from collections.abc import Iterator, Mapping
+
 import numpy as np
 from scipy.special import log_ndtr, ndtri_exp
 
@@ -10,10 +12,37 @@ from service.core.distributions.kernels.elementary import HALF_LOG_2PI
 from service.core.distributions.kernels.logarithms import smaller_tail
 from service.core.distributions.kernels.newton import newton_on_log_tail
 from service.core.distributions.kernels.normal_interval import Cut, log_cut_density, log_lower_share, log_scaled_mass
+from service.core.errors import Refusal
 from service.core.parameters import Order, anywhere, positive
 
 REACH = 40.0
 """No double is as small as the chance of a value so many standard deviations beyond the most likely one."""
+
+
+MOST_SCORE = 1e6
+
+
+class InReach:
+    """The nearer end lies within a million standard deviations of the mean.
+
+    Beyond, the law falls from that end by more between two doubles than can be told apart.
+    """
+
+    words = "the nearer end lies within 1e6 standard deviations of the mean"
+
+    def refusals(self, values: Mapping[str, Numbers]) -> Iterator[Refusal]:
+        """Refuse the lower end that lies too far above the mean, or the upper one too far below."""
+        for name, side in (("lower", 1), ("upper", -1)):
+            score = np.asarray(side * (values[name] - values["mean"]) / values["standard_deviation"])
+            if (score > MOST_SCORE).any():
+                place = int(np.argmax(score > MOST_SCORE))
+                at = (place,) if np.ndim(values[name]) else ()
+                given = float(np.ravel(score)[place])
+                detail = (
+                    f"{name} lies {given:.6g} standard deviations from the mean, towards the other end; at most 1e6."
+                )
+                yield Refusal((name, *at), "not_representable", detail, {"at_most": MOST_SCORE, "given": given})
+                return
 
 
 def _distance(cut: Cut, tail: Numbers) -> Numbers:
@@ -62,7 +91,7 @@ class TruncatedNormal(Family):
     standard_deviation = positive("the standard deviation of the whole normal law", example=0.2)
     lower = anywhere("the lower end", example=-0.3)
     upper = anywhere("the upper end", example=0.5)
-    rules = (Order("lower", "upper"),)
+    rules = (Order("lower", "upper"), InReach())
 
     def _between(self, lower: Numbers, upper: Numbers) -> Cut:
         a, b = ((end - self.mean) / self.standard_deviation for end in (lower, upper))
@@ -74,7 +103,10 @@ class TruncatedNormal(Family):
 
     def _reached(self, x: Numbers) -> tuple[Numbers, Numbers]:
         """The ends, or points beyond which no double finds mass: distances from an end have to tell values apart."""
-        near, far = self.most_likely(), REACH * self.standard_deviation
+        near = self.most_likely()
+        # at an end far out the law falls like exp(-|score| t): 20 REACH such lengths hold all that a double can find
+        score = np.abs(near - self.mean) / self.standard_deviation
+        far = REACH * self.standard_deviation * np.minimum(1, 20 / score)
         return (
             np.maximum(self.lower, np.minimum(near, x) - far),
             np.minimum(self.upper, np.maximum(near, x) + far),
