@@ -22,7 +22,7 @@ class Geometric(Family):
     discrete = True
     support_words = "the whole numbers from 1"
     numerical_error = 4e-15
-    success_probability = positive("the probability of success of each trial", at_most=1, example=0.2)
+    success_probability = positive("the probability of success of each trial", at_least=1e-15, at_most=1, example=0.2)
 
     @property
     def _log_failure(self) -> Numbers:

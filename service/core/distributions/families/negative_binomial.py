@@ -1,5 +1,7 @@
 """The negative binomial distribution."""
 
+from collections.abc import Iterator, Mapping
+
 import numpy as np
 
 from service.core.arrays import INFINITY, NO_VALUE, Numbers, number
@@ -9,7 +11,10 @@ from service.core.distributions.kernels.incomplete_beta import log_beta_tails
 from service.core.distributions.kernels.lattice import lattice_quantile, long_lattice_entropy, smallest_mode
 from service.core.distributions.kernels.logarithms import log_complement
 from service.core.distributions.kernels.saddle_point import log_binomial_mass
+from service.core.errors import Refusal
 from service.core.parameters import positive
+
+MOST_EXPECTED = 1e15
 
 
 def log_tails(k: Numbers, r: Numbers, p: Numbers) -> tuple[Numbers, Numbers]:
@@ -28,6 +33,26 @@ def log_mass(k: Numbers, r: Numbers, p: Numbers) -> Numbers:
     return np.log(r / (r + k)) + log_binomial_mass(r, r + k, p, 1 - p)
 
 
+class WithinExactCounts:
+    """The expected number of failures is at most 1e15: beyond 2^53 doubles skip whole numbers."""
+
+    words = "successes (1 - success_probability)/success_probability <= 1e15"
+
+    def refusals(self, values: Mapping[str, Numbers]) -> Iterator[Refusal]:
+        """Refuse the first entry that expects more failures than a double can count."""
+        p = values["success_probability"]
+        expected = np.asarray(values["successes"] * (1 - p) / p)
+        if (expected <= MOST_EXPECTED).all():
+            return
+        place = int(np.argmax(expected > MOST_EXPECTED))
+        at = (place,) if np.ndim(p) else ()
+        given = float(np.ravel(expected)[place])
+        detail = f"These parameters expect {given:.6g} failures; at most 1e15 can be counted."
+        yield Refusal(
+            ("success_probability", *at), "not_representable", detail, {"at_most": MOST_EXPECTED, "given": given}
+        )
+
+
 class NegativeBinomial(Family):
     """The number of failures before a given number of successes; counts that scatter more than Poisson's.
 
@@ -43,6 +68,7 @@ class NegativeBinomial(Family):
     numerical_error = 1e-13
     successes = positive("the number of successes waited for", at_least=1e-3, at_most=1e10, example=3)
     success_probability = positive("the probability of success of each trial", at_least=1e-9, at_most=1, example=0.4)
+    rules = (WithinExactCounts(),)
 
     def log_tails(self, x: Numbers) -> Tails:
         return Tails(*log_tails(np.floor(x), self.successes, self.success_probability))

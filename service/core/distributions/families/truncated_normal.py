@@ -86,7 +86,7 @@ class TruncatedNormal(Family):
     support_words = "lower <= x <= upper"
     method = "quadrature"
     quantile_method = "newton_on_log_tail"
-    numerical_error = 1e-13
+    numerical_error = 4e-13
     mean = anywhere("the mean of the whole normal law", example=0.05)
     standard_deviation = positive("the standard deviation of the whole normal law", example=0.2)
     lower = anywhere("the lower end", example=-0.3)
