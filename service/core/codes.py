@@ -52,6 +52,13 @@ FAULTS = {
     "predictive_not_available": "The uncertainty of the estimates cannot be included for this return model.",
     "must_add_up_to_one": "The weights must add up to 1.",
     "expansion_not_monotone": "The Cornish-Fisher expansion with these parameters falls somewhere and gives no law.",
+    "unknown_asset": "There is no such asset under `assets`.",
+    "weight_limits_infeasible": "No weights within these limits add up to 1.",
+    "no_mix_above_threshold": "No mix has an expected return above the threshold.",
+    "no_admissible_mix": "No mix keeps the limit on missing the threshold.",
+    "threshold_without_risk": "The threshold can be kept without any risk, so that no ratio is the greatest.",
+    "probability_not_below_half": "The method is for probabilities below one half.",
+    "model_not_available": "The method is not available for this return model.",
     "not_a_correlation_matrix": "Correlations must be symmetric, 1 on the diagonal, and without a negative eigenvalue.",
     "no_event": "An event needs a bound.",
     "bounds_do_not_go_together": "These bounds cannot describe one event.",
@@ -79,6 +86,8 @@ CAUTIONS = {
     "estimates_taken_as_true": "Expected return and risk are taken as known; a return one point lower changes the "
     "answer.",
     "unusual_level": "A tail is usually the smaller part of all outcomes: levels above 0.5, probabilities below.",
+    "optimum_is_optimistic": "The mix fits the estimates it was given, errors included; expect less from it than shown.",
+    "law_is_approximation": "A mix of lognormal assets is taken as lognormal with the same mean and volatility.",
     "looks_like_percent": "A figure was perhaps meant in per cent: 5 for 0.05.",
 }
 
@@ -100,6 +109,7 @@ METHODS = {
     "bisection_on_exact_tail": "A search between whole numbers on the exact tail.",
     "quadrature": "Numerical integration with a known error.",
     "closed_form_and_quadrature": "Probabilities and quantiles from a formula, averages by numerical integration.",
+    "active_set_on_frontier": "An active-set walk along the efficient frontier; figures of the mix from a formula.",
     "counting": "Observations counted; probabilities are exact fractions.",
     "several_methods": "The portfolios' laws are computed by different methods.",
     "batch": "Each answer of the batch names its own method.",

@@ -1,16 +1,24 @@
 """POST /v1/rankings."""
 
+from collections.abc import Mapping, Sequence
+from typing import ClassVar
+
+import numpy as np
+
+from service.core.arrays import Numbers
 from service.core.parameters import Parameter
+from service.core.portfolio.assets import Assets
 from service.core.portfolio.collection import Portfolios
 from service.core.portfolio.criteria import CRITERIA
 from service.core.portfolio.question import RankingQuestion as CoreQuestion
 from service.core.portfolio.ranking import rank
 from service.endpoints.declaration import endpoint
 from service.schemas.answers import Result
-from service.schemas.cautions import beside_shortfalls, sentence
+from service.schemas.assets import AssetsField
+from service.schemas.cautions import about_mixes, beside_shortfalls, sentence
 from service.schemas.fields import ChoiceField, GroupField, MatrixField, NumberField
 from service.schemas.floor_question import FloorQuestion, floor_of, settings_of, slips_in
-from service.schemas.portfolio import ColumnsField, PortfolioListField
+from service.schemas.portfolio import ColumnsField, Portfolio, PortfolioListField, resolved
 from service.schemas.question import Asked
 from service.schemas.ranking import COLUMNS, ROWS, ranking_cautions, ranking_values, write_ranking
 
@@ -19,7 +27,9 @@ class RankingQuestion(FloorQuestion):
     """Which portfolio is the safest for a floor?"""
 
     told_by = ("portfolios", "portfolio_columns")
+    belongs_to: ClassVar[Mapping[str, str]] = {"assets": "portfolios"}
     portfolios = PortfolioListField("the portfolios to compare")
+    assets = AssetsField("the assets that portfolios by weights are made of")
     portfolio_columns = ColumnsField("the portfolios to compare, the parameters of one model in columns")
     threshold = NumberField(Parameter("the least acceptable return", example=0.02), required=True, arrays=False)
     criterion = ChoiceField("what to rank by; safety_first_ratio is the default", tuple(CRITERIA))
@@ -71,15 +81,17 @@ EXAMPLES = {
 )
 def rankings(asked: Asked) -> Result:
     """Which portfolio is the safest for this floor?"""
-    columns = asked.get("portfolio_columns")
+    columns, assets, correlations = (asked.get(name) for name in ("portfolio_columns", "assets", "correlations"))
+    rows: list[Portfolio] = asked.get("portfolios", [])
     if columns is not None:
         names, portfolios = columns.names, Portfolios(columns.returns, columns.names)
         models = {"/portfolio_columns": columns.returns.model}
     else:
-        rows = asked["portfolios"]
         names = tuple(row.name for row in rows)
-        portfolios = Portfolios([row.returns for row in rows], names)
-        models = {f"/portfolios/{i}/returns": row.returns.model for i, row in enumerate(rows)}
+        returns = [resolved(row, assets, "portfolios", i) for i, row in enumerate(rows)]
+        portfolios = Portfolios(returns, names)
+        models = {f"/portfolios/{i}/returns": each.model for i, each in enumerate(returns)}
+        correlations = known_correlations(rows, assets) if correlations is None else correlations
     floor = floor_of(asked)
     limits = asked.get("limits", {})
     found = rank(
@@ -88,12 +100,17 @@ def rankings(asked: Asked) -> Result:
             floor,
             asked.get("criterion", "safety_first_ratio"),
             limits.get("shortfall_probability"),
-            correlations=asked.get("correlations"),
+            correlations=correlations,
             **settings_of(asked),
         ),
     )
     cautions = beside_shortfalls(floor.horizon_years, losses=bool(found.shortfall.tail_losses))
-    cautions += [sentence("estimates_taken_as_true"), *ranking_cautions(found), *slips_in(asked, models)]
+    cautions += [
+        sentence("estimates_taken_as_true"),
+        *ranking_cautions(found),
+        *about_mixes(rows, assets),
+        *slips_in(asked, models),
+    ]
     reason = found.confidence_reason or "not_computed"
     return Result(
         ranking_values(found, names, columns=columns is not None),
@@ -108,3 +125,10 @@ def rankings(asked: Asked) -> Result:
             "/dominated": "not_computed",
         },
     )
+
+
+def known_correlations(rows: Sequence[Portfolio], assets: Assets | None) -> Numbers | None:
+    """Give the correlations of portfolios that are all mixes of the same assets; they follow from these."""
+    if assets is None or any(row.weights is None for row in rows):
+        return None
+    return assets.correlation_of_mixes(np.stack([assets.aligned(dict(row.weights or {})) for row in rows]))

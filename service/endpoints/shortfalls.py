@@ -4,10 +4,11 @@ from service.core.parameters import Parameter
 from service.core.portfolio.shortfall import shortfall
 from service.endpoints.declaration import endpoint
 from service.schemas.answers import AnswerShape, Plain, Result
-from service.schemas.cautions import beside_shortfalls
+from service.schemas.assets import AssetsField
+from service.schemas.cautions import about_mixes, beside_shortfalls
 from service.schemas.fields import NumberField
 from service.schemas.floor_question import FloorQuestion, floor_of, settings_of, slips_in
-from service.schemas.portfolio import PortfolioField
+from service.schemas.portfolio import PortfolioField, resolved
 from service.schemas.question import Asked
 from service.schemas.shortfall import outcomes_shape, shortfall_shape, shortfall_values
 
@@ -16,6 +17,7 @@ class ShortfallQuestion(FloorQuestion):
     """How likely does a portfolio miss a floor, and by how much?"""
 
     portfolio = PortfolioField("the portfolio", required=True)
+    assets = AssetsField("the assets that a portfolio by weights is made of")
     threshold = NumberField(
         Parameter("the least acceptable return, a number or a list of them", example=0.02), required=True
     )
@@ -42,11 +44,13 @@ EXAMPLES = {
 @endpoint("/v1/shortfalls", name="Shortfall", question=ShortfallQuestion, answers=ANSWERS, examples=EXAMPLES)
 def shortfalls(asked: Asked) -> Result:
     """How likely does a portfolio miss a floor, and by how much?"""
-    portfolio = asked["portfolio"]
+    portfolio, assets = asked["portfolio"], asked.get("assets")
+    returns = resolved(portfolio, assets, "portfolio")
     floor = floor_of(asked)
-    found = shortfall(portfolio.returns, floor, **settings_of(asked))
+    found = shortfall(returns, floor, **settings_of(asked))
     cautions = beside_shortfalls(floor.horizon_years, losses=bool(found.tail_losses))
-    cautions += slips_in(asked, {"/portfolio/returns": portfolio.returns.model})
+    cautions += about_mixes([portfolio], assets)
+    cautions += slips_in(asked, {"/portfolio/returns": returns.model})
     values = shortfall_values(found)
     if asked.length is not None and found.outcomes is not None:
         values["outcomes"] = Plain((found.outcomes[:, 0] + 0.0).tolist())  # the same for every floor

@@ -11,7 +11,7 @@ from marshmallow.fields import Field
 from service.core.arrays import Numbers
 from service.core.errors import DoesNotFit
 from service.core.parameters import Parameter
-from service.schemas.faults import as_messages, closest_to, refuse, unknown
+from service.schemas.faults import Fault, as_messages, closest_to, refuse, required, unknown
 from service.schemas.limits import DEFAULT_LIMITS, Limits
 from service.schemas.numbers import number_list, number_schema, parameter_schema, read_array, read_parameter
 
@@ -97,6 +97,58 @@ class NumberField(StrictField):
         yield name, self.meaning, number_list(self.limits)
 
 
+def read_members(
+    given: Mapping[str, Any], inner: Mapping[str, StrictField], limits: Limits
+) -> tuple[dict[str, Any], dict[str, Any]]:
+    """Read the members of an object; give what was found, and the faults."""
+    found: dict[str, Any] = {}
+    faults: dict[str, Any] = {}
+    for name, entry in given.items():
+        field = inner.get(name)
+        if field is None:
+            missing = [n for n, f in inner.items() if f.required and n not in given]
+            faults[name] = [unknown(name, inner, missing)]
+            continue
+        field.name, field.limits = name, limits
+        try:
+            found[name] = field.read(entry)
+        except ValidationError as error:
+            faults[name] = error.messages
+    return found, faults
+
+
+def read_rows(
+    value: Any, inner: Mapping[str, StrictField], needed: Iterable[str], limits: Limits
+) -> list[dict[str, Any]]:
+    """Read a list of objects that each need some of their members. Raises ValidationError."""
+    if type(value) is not list:
+        raise refuse("not_an_array", "A JSON array of objects is needed.")
+    if not value:
+        raise refuse("empty", "A list needs an entry.")
+    if len(value) > limits.assets:
+        raise refuse(
+            "too_many",
+            f"At most {limits.assets} entries; these are {len(value)}.",
+            given=len(value),
+            limit=limits.assets,
+        )
+    rows: list[dict[str, Any]] = []
+    faults: dict[int, Any] = {}
+    for index, entry in enumerate(value):
+        if type(entry) is not dict:
+            faults[index] = [Fault("not_an_object", "A JSON object is needed.")]
+            continue
+        row = read_object(entry)
+        found, wrong = read_members(row, inner, limits)
+        wrong |= {name: [required(name)] for name in needed if name not in row}
+        rows.append(found)
+        if wrong:
+            faults[index] = wrong
+    if faults:
+        raise ValidationError(faults)
+    return rows
+
+
 class GroupField(StrictField):
     """An object of fields that may each be left out."""
 
@@ -105,27 +157,15 @@ class GroupField(StrictField):
         self.inner = inner
 
     def read(self, value: Any) -> dict[str, Any]:
-        found: dict[str, Any] = {}
-        faults: dict[str, Any] = {}
-        for name, entry in read_object(value).items():
-            if name not in self.inner:
-                faults[name] = [unknown(name, self.inner)]
-                continue
-            try:
-                found[name] = self._field(name).read(entry)
-            except ValidationError as error:
-                faults[name] = error.messages
+        found, faults = read_members(read_object(value), self.inner, self.limits)
         if faults:
             raise ValidationError(faults)
         return found
 
-    def _field(self, name: str) -> StrictField:
-        field = self.inner[name]
-        field.name, field.limits = name, self.limits
-        return field
-
     def printed(self, components: dict[str, Any]) -> dict[str, Any]:
-        members = {name: self._field(name).printed(components) for name in self.inner}
+        for field in self.inner.values():
+            field.limits = self.limits
+        members = {name: field.printed(components) for name, field in self.inner.items()}
         return closed_object(members, optional=members, description=self.meaning)
 
 

@@ -10,9 +10,10 @@ from marshmallow import ValidationError
 from service.core.declared import Declared, Parameterisation
 from service.core.errors import DoesNotFit, Refusal
 from service.core.parameters import Parameter
+from service.core.portfolio.assets import Assets
 from service.core.returns import PERIODS_PER_YEAR, RETURN_MODELS, Returns
 from service.schemas.declared import DeclaredField
-from service.schemas.faults import inside, refuse, required, unknown
+from service.schemas.faults import Fault, inside, refuse, required, shown
 from service.schemas.fields import (
     ChoiceField,
     Given,
@@ -20,7 +21,9 @@ from service.schemas.fields import (
     StrictField,
     TextField,
     closed_object,
+    read_members,
     read_object,
+    read_rows,
     reference,
 )
 
@@ -40,10 +43,23 @@ WORDS: dict[str, StrictField] = {
 
 @dataclass(frozen=True, slots=True)
 class Portfolio:
-    """A model of returns under a name."""
+    """A model of returns under a name, or weights over the shared assets."""
 
     name: str | None
-    returns: Returns
+    returns: Returns | None
+    weights: Mapping[str, float] | None = None
+
+
+def resolved(portfolio: Portfolio, assets: Assets | None, *steps: str | int) -> Returns:
+    """Give the returns of a portfolio; those of a mix follow from the assets. Raises DoesNotFit; `steps` lead to it."""
+    if portfolio.returns is not None:
+        return portfolio.returns
+    if assets is None:
+        raise DoesNotFit([Refusal(("assets",), "required", "assets is needed by weights.", {"by": "weights"})])
+    try:
+        return assets.mix(assets.aligned(dict(portfolio.weights or {})))
+    except DoesNotFit as error:
+        raise inside(error, *steps, "weights") from None
 
 
 @dataclass(frozen=True, slots=True)
@@ -73,34 +89,65 @@ class ReturnsField(DeclaredField):
         return Returns(kind.make(way, numbers), **extras)  # type: ignore[arg-type]  # the registry holds return models
 
 
+WEIGHT = Parameter("share of the portfolio", above=-100, below=100, example=0.4)
+NAMED_WEIGHTS = {
+    "asset": TextField("one of the names under assets", LONGEST_NAME),
+    "weight": NumberField(WEIGHT, arrays=False),
+}
+
+
+class WeightsField(StrictField):
+    """Weights over the shared assets; they add up to 1."""
+
+    def read(self, value: Any) -> dict[str, float]:
+        rows = read_rows(value, NAMED_WEIGHTS, ("asset", "weight"), self.limits)
+        weights: dict[str, float] = {}
+        faults: dict[int, Any] = {}
+        for index, row in enumerate(rows):
+            if row["asset"] in weights:
+                faults[index] = {"asset": [Fault("given_twice", f"The asset {shown(row['asset'])} stands twice.")]}
+            weights[row["asset"]] = row["weight"]
+        if faults:
+            raise ValidationError(faults)
+        return weights
+
+    def printed(self, components: dict[str, Any]) -> dict[str, Any]:
+        members = {name: field.printed(components) for name, field in NAMED_WEIGHTS.items()}
+        return {
+            "type": "array",
+            "items": closed_object(members),
+            "minItems": 1,
+            "maxItems": self.limits.assets,
+            "description": "weights over the shared assets, adding up to 1",
+        }
+
+
 class PortfolioField(StrictField):
-    """A portfolio: its returns, and a name if it has one."""
+    """A portfolio: a name if it has one, and its returns or its weights over the shared assets."""
 
     def __init__(self, meaning: str = "", *, required: bool = False) -> None:
         super().__init__(meaning, required=required)
-        self.returns = ReturnsField("the return of one period")
+        self.inner: dict[str, StrictField] = {
+            "name": NAME,
+            "returns": ReturnsField("the return of one period"),
+            "weights": WeightsField(),
+        }
 
     def read(self, value: Any) -> Given:
         given = read_object(value)
-        self.returns.limits = self.limits
-        faults: dict[str, Any] = {
-            name: [unknown(name, ("name", "returns"), [n for n in ("returns",) if n not in given])]
-            for name in given
-            if name not in ("name", "returns")
-        }
-        found: dict[str, Any] = {}
-        for name, field in (("name", NAME), ("returns", self.returns)):
-            try:
-                if name in given:
-                    found[name] = field.read(given[name])
-            except ValidationError as error:
-                faults[name] = error.messages
-        if "returns" not in given:
+        found, faults = read_members(given, self.inner, self.limits)
+        if "returns" not in given and "weights" not in given:
             faults["returns"] = [required("returns")]
+        if "returns" in given and "weights" in given:
+            faults["weights"] = [
+                Fault("does_not_go_together", "weights do not go together with returns.", {"beside": ["returns"]})
+            ]
         if faults:
             raise ValidationError(faults)
-        returns: Given = found["returns"]
-        return Given(returns.numbers, lambda: self._make(found.get("name"), returns), returns.lists)
+        name, returns = found.get("name"), found.get("returns")
+        if returns is None:
+            return Given({}, lambda: Portfolio(name, None, found["weights"]))
+        return Given(returns.numbers, lambda: self._make(name, returns), returns.lists)
 
     @staticmethod
     def _make(name: str | None, returns: Given) -> Portfolio:
@@ -111,9 +158,15 @@ class PortfolioField(StrictField):
 
     def printed(self, components: dict[str, Any]) -> dict[str, Any]:
         if "Portfolio" not in components:
-            self.returns.limits = self.limits
-            members = {"name": NAME.printed(components), "returns": self.returns.printed(components)}
-            components["Portfolio"] = closed_object(members, optional=("name",))
+            for field in self.inner.values():
+                field.limits = self.limits
+            members = {name: field.printed(components) for name, field in self.inner.items()}
+            ways = {"PortfolioByReturns": ("name", "returns"), "PortfolioByWeights": ("name", "weights")}
+            for component, own in ways.items():
+                components[component] = closed_object(
+                    {name: members[name] for name in own}, optional=("name",), never=members
+                )
+            components["Portfolio"] = {"oneOf": [reference(component) for component in ways]}
         return reference("Portfolio")
 
 

@@ -177,7 +177,6 @@ def test_a_period_of_its_own_length(ask: Asker) -> None:
             {"portfolio": BALANCED, "threshold": 0, "parameter_uncertainty": "predictive"},
             {"/portfolio/returns/sample_size": "required"},
         ),
-        ({"portfolio": BALANCED, "threshold": 0, "assets": {}}, {"/assets": "unknown_field"}),
     ],
 )
 def test_what_does_not_fit_is_named_by_pointer_and_code(ask: Asker, question: object, expected: dict[str, str]) -> None:

@@ -4,7 +4,6 @@ import numpy as np
 from scipy.special import ndtri
 
 from service.core.arrays import Numbers, Truths, number
-from service.core.errors import DoesNotFit, Refusal
 from service.core.portfolio.collection import Collection
 from service.core.portfolio.confidence import (
     Covariance,
@@ -21,8 +20,6 @@ NEEDS_SAMPLE_SIZE = "needs_sample_size"
 NOT_COMPUTED = "not_computed"
 NO_VALUE_REASON = "no_value"
 RATIO_CRITERIA = ("safety_first_ratio", "shortfall_probability")
-ROUNDING = 1e-9
-LEAST_EIGENVALUE = -1e-8
 
 
 def estimates_of(collection: Collection, question: RankingQuestion, compared: Truths) -> Estimates | str:
@@ -73,19 +70,3 @@ def _threshold_per_period(floor: Floor, periods: Numbers, compounding: str) -> N
     if compounding == "simple":
         return per_year(threshold, float(periods))
     return np.log1p(threshold) / periods
-
-
-def refuse_unless_correlations(correlations: Numbers, count: int) -> None:
-    """Refuse what cannot be the correlations of `count` portfolios."""
-    if correlations.shape != (count, count):
-        detail = f"correlations must have {count} rows of {count} numbers, one for each portfolio."
-        raise DoesNotFit([Refusal(("correlations",), "lengths_differ", detail, {"expected": count})])
-    slanted = np.abs(correlations - correlations.T) > ROUNDING
-    off_one = np.abs(np.diag(correlations) - 1) > ROUNDING
-    if slanted.any() or off_one.any():
-        detail = "correlations must be symmetric, with 1 on the diagonal."
-    elif np.linalg.eigvalsh(correlations).min() < LEAST_EIGENVALUE:
-        detail = "No returns can have these correlations: the matrix has a negative eigenvalue."
-    else:
-        return
-    raise DoesNotFit([Refusal(("correlations",), "not_a_correlation_matrix", detail, {})])

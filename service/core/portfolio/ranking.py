@@ -1,6 +1,6 @@
 """Portfolios best first by a criterion, with what else a reader has to know about the order."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import combinations
 
 import numpy as np
@@ -8,9 +8,10 @@ import numpy as np
 from service.core.arrays import NO_VALUE, Truths
 from service.core.portfolio.collection import Collection, Portfolios, collected
 from service.core.portfolio.confidence import confidence_in_leader, pairwise_confidence
+from service.core.portfolio.correlations import checked_correlations
 from service.core.portfolio.criteria import CRITERIA, HIGHER
 from service.core.portfolio.dominance import dominated
-from service.core.portfolio.estimates import estimates_of, refuse_unless_correlations
+from service.core.portfolio.estimates import estimates_of
 from service.core.portfolio.question import Agreement, Caution, Confidence, Pairwise, Ranking, RankingQuestion
 from service.core.portfolio.ranks import NO_RANK, kendall_tau_b, ranked
 from service.core.portfolio.shortfall import Shortfall, figures
@@ -26,7 +27,8 @@ PAIRS_LISTED = 100
 def rank(portfolios: Portfolios, question: RankingQuestion) -> Ranking:
     """Rank the portfolios (1 or more). Raises DoesNotFit; paths lead from the question."""
     if question.correlations is not None:
-        refuse_unless_correlations(question.correlations, portfolios.count)
+        checked = checked_correlations(question.correlations, portfolios.count, ("correlations",))
+        question = replace(question, correlations=checked)
     collection = collected(portfolios, question.floor.horizon_years, question.parameter_uncertainty)
     with np.errstate(all="ignore"):
         return _ranking(portfolios, question, collection)
