@@ -5,7 +5,7 @@ from typing import NamedTuple
 import numpy as np
 from scipy.special import erf, erfcx
 
-from service.core.arrays import Numbers
+from service.core.arrays import Numbers, flat
 from service.core.distributions.kernels.elementary import HALF_LOG_2PI
 from service.core.distributions.kernels.quadrature import MEDIUM
 
@@ -18,19 +18,25 @@ def log_scaled_mass(a: Numbers, d: Numbers) -> Numbers:
     Ends of opposite signs: a sum of two erf; of the same sign: a difference of two erfcx where d max(1, |a|) > 1, else
     the integral of exp(-a t - t^2/2) by 36 points. Scaled so, laws far out in a tail keep their digits. Error 4 eps.
     """
+    shape, (a, d) = flat(a, d)
     b = a + d
     mirrored = a + b < 0
     near, far = np.where(mirrored, -b, a), np.where(mirrored, -a, b)
     across = np.log(0.5 * (erf(far * ROOT_HALF) - erf(near * ROOT_HALF)))
     fall = np.exp(np.minimum(-d * (near + d / 2), 0))
     apart = np.log(0.5 * (erfcx(near * ROOT_HALF) - fall * erfcx(far * ROOT_HALF)))
+    value: Numbers = np.where(near < 0, across, apart)
+    i = np.flatnonzero(d * np.maximum(1, np.abs(near)) <= 1)
+    if i.size:
+        value[i] = _log_narrow(near[i], d[i])
+    return value.reshape(shape)[()]
+
+
+def _log_narrow(near: Numbers, d: Numbers) -> Numbers:
     t = MEDIUM.over(d)
-    close = np.log(d * MEDIUM.mean(np.exp(np.minimum(-t * (near + t / 2), 1)))) - HALF_LOG_2PI
+    value = np.log(d * MEDIUM.mean(np.exp(-t * (near + t / 2)))) - HALF_LOG_2PI
     # an interval across 0 has its peak there, the integral is scaled to its end
-    close = close - np.square(np.minimum(near, 0)) / 2
-    narrow = d * np.maximum(1, np.abs(near)) <= 1
-    value: Numbers = np.where(narrow, close, np.where(near < 0, across, apart))[()]
-    return value
+    return value - np.square(np.minimum(near, 0)) / 2
 
 
 class Cut(NamedTuple):

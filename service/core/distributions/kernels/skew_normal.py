@@ -38,24 +38,39 @@ def log_skew_tails(z: Numbers, a: Numbers) -> tuple[Numbers, Numbers]:
 
 
 def _log_lower(h: Numbers, a: Numbers) -> Numbers:
-    """Log P(Z <= -h), h >= 0: 1/pi times the integral of exp(-h^2 (1 + t^2)/2)/(1 + t^2) from a on, t = sinh w.
-
-    Scaled to 1 at the lower end, 64 points up to where the exponent has grown by 42, an end in closed form. For
-    h max(1, a) <= 1/2: P(Z <= 0) = atan(1/a)/pi less the integral of the density.
-    """
+    """Log P(Z <= -h), h >= 0; in blocks that a processor's cache holds."""
+    shape, (h, a) = flat(h, a)
     near = h * np.maximum(1, a) <= 0.5
-    g = np.where(near, 1.0, h)
-    hypotenuse, growth = np.sqrt(1 + a * a), 84 / (g * g)
+    value = np.empty_like(h)
+    for form, chosen in ((_from_median, near), (_far_out, ~near)):
+        every = np.flatnonzero(chosen)
+        for first in range(0, every.size, BLOCK):
+            i = every[first : first + BLOCK]
+            value[i] = form(h[i], a[i])
+    return value.reshape(shape)[()]
+
+
+def _far_out(h: Numbers, a: Numbers) -> Numbers:
+    """1/pi times the integral of exp(-h^2 (1 + t^2)/2)/(1 + t^2) over t = sinh w from a on.
+
+    Scaled to 1 at the lower end, 64 points up to where the exponent has grown by 42, an end in closed form.
+    """
+    hypotenuse, growth = np.sqrt(1 + a * a), 84 / (h * h)
     end_sinh = np.sqrt(a * a + growth)
     width = np.minimum(np.arcsinh(growth / (end_sinh * hypotenuse + a * np.sqrt(1 + end_sinh * end_sinh))), 40)
     r = FINE.over(width)
-    exponent = 0.5 * g * g * np.sinh(r) * (np.sinh(r) * (1 + 2 * a * a) + np.cosh(r) * 2 * a * hypotenuse)
-    integral = width * FINE.mean(np.exp(-exponent) / (np.cosh(r) * hypotenuse + np.sinh(r) * a))
-    far = -0.5 * g * g * (1 + a * a) + np.log(integral) - LOG_PI
-    reach = np.where(near, h, 0.0)
-    u = MEDIUM.over(reach)
-    inner = reach * MEDIUM.mean(np.exp(-u * u / 2) * ndtr(-a * u)) * np.sqrt(2 / np.pi)
-    value: Numbers = np.where(near, np.log(np.arctan2(1, a) / np.pi - inner), far)
+    sinh, cosh = np.sinh(r), np.cosh(r)
+    exponent = 0.5 * h * h * sinh * (sinh * (1 + 2 * a * a) + cosh * 2 * a * hypotenuse)
+    integral = width * FINE.mean(np.exp(-exponent) / (cosh * hypotenuse + sinh * a))
+    value: Numbers = -0.5 * h * h * (1 + a * a) + np.log(integral) - LOG_PI
+    return value
+
+
+def _from_median(h: Numbers, a: Numbers) -> Numbers:
+    """P(Z <= 0) = atan(1/a)/pi less the integral of the density from -h to 0, for h max(1, a) <= 1/2."""
+    u = MEDIUM.over(h)
+    inner = h * MEDIUM.mean(np.exp(-u * u / 2) * ndtr(-a * u)) * np.sqrt(2 / np.pi)
+    value: Numbers = np.log(np.arctan2(1, a) / np.pi - inner)
     return value
 
 
