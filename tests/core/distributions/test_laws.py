@@ -91,11 +91,12 @@ def test_the_quantile_inverts_both_tails(kind: type[Family], data: st.DataObject
         assert max(less, more, reached) >= p * (1 - 1e-11)
         return
     before = asked.tails(np.nextafter(x, -np.inf))
+    slack = 1e-12 if kind.quantile_method == "counting" else 0
     if upper:
-        assert reached <= p * (1 + 2e-12) + 1e-12 * (kind.name == "empirical")
+        assert reached <= p * (1 + 2e-12) + slack
         assert before.above > p * (1 - 2e-12)
     else:
-        assert reached >= p * (1 - 2e-12) - 1e-12
+        assert reached >= p * (1 - 2e-12) - slack
         assert before.at_most < p * (1 + 2e-12)
 
 
