@@ -48,7 +48,7 @@ FAULTS = {
     "not_representable": "The parameters are so extreme that a double cannot hold what follows from them.",
     "compounding_not_available": "The return model does not take this compounding.",
     "horizon_not_divisible": "The horizon is no whole number of periods, and the law of the returns does not divide.",
-    "horizon_not_available": "The law of so many periods is not available for this return model.",
+    "too_much_work": "The question would take too long to compute; `work` and `limit` say by how much.",
     "predictive_not_available": "The uncertainty of the estimates cannot be included for this return model.",
     "must_add_up_to_one": "The weights must add up to 1.",
     "expansion_not_monotone": "The Cornish-Fisher expansion with these parameters falls somewhere and gives no law.",
@@ -88,6 +88,10 @@ CAUTIONS = {
     "unusual_level": "A tail is usually the smaller part of all outcomes: levels above 0.5, probabilities below.",
     "optimum_is_optimistic": "The mix fits the estimates it was given, errors included; expect less from it than shown.",
     "law_is_approximation": "A mix of lognormal assets is taken as lognormal with the same mean and volatility.",
+    "growth_below_zero": "A loss of more than everything is possible under this model; it counts as a loss of all, and is "
+    "final.",
+    "discrete_law_approximated": "There are too many possible outcomes to list; their law is taken as smooth, with the "
+    "error stated.",
     "looks_like_percent": "A figure was perhaps meant in per cent: 5 for 0.05.",
 }
 
@@ -111,6 +115,10 @@ METHODS = {
     "closed_form_and_quadrature": "Probabilities and quantiles from a formula, averages by numerical integration.",
     "active_set_on_frontier": "An active-set walk along the efficient frontier; figures of the mix from a formula.",
     "counting": "Observations counted; probabilities are exact fractions.",
+    "enumeration": "All possible outcomes listed, each with its exact probability.",
+    "exact_sum": "A sum over the components that may rule, each term from a formula.",
+    "two_halves": "The outcomes of each half of the periods listed, and every pair of them counted by sorted search.",
+    "fourier_inversion": "The characteristic function inverted numerically; two grids show the error.",
     "several_methods": "The portfolios' laws are computed by different methods.",
     "batch": "Each answer of the batch names its own method.",
 }

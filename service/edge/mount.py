@@ -1,6 +1,6 @@
 """Declared endpoints and catalogues become routes: accept, body, read, ask, answer, respond."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 from typing import Any
 
 from flask import Flask, Request, Response, request
@@ -16,7 +16,7 @@ from service.edge.settings import Settings
 from service.edge.strict_json import read
 from service.endpoints.declaration import Catalogue, Endpoint
 from service.schemas.answers import write_batch
-from service.schemas.faults import as_messages
+from service.schemas.faults import Fault, as_messages
 from service.schemas.question import Asked, ask_batch
 
 
@@ -45,6 +45,7 @@ class MountedEndpoint:
         self.question = declared.question(settings.limits, declared.batch)  # once, not once a request
         self.query = FlatQuery(self.question) if declared.get else None
         self.max_body_bytes = settings.max_body_bytes
+        self.work_budget = settings.work_budget
         self.responder = responder
         self.problems = problems
         self.methods = ["OPTIONS", "POST", *(["GET", "HEAD"] if declared.get else [])]
@@ -75,9 +76,23 @@ class MountedEndpoint:
         mark = fingerprint(self.path, b"\n", body)
         if self.declared.batch and type(data) is dict and "questions" in data:
             if data["questions"] is not None:
-                return write_batch(self._answer_each(ask_batch(self.question, data)), mark)
+                questions = ask_batch(self.question, data)
+                self._check_work(questions, {"questions"})
+                return write_batch(self._answer_each(questions), mark)
             del data["questions"]
-        return self._answer(self.question.ask(data), mark)
+        return self._answer_one(self.question.ask(data), mark)
+
+    def _answer_one(self, question: Asked, mark: str | None) -> dict[str, Any]:
+        self._check_work([question], ())
+        return self._answer(question, mark)
+
+    def _check_work(self, questions: list[Asked], place: Iterable[str]) -> None:
+        """Refuse more work than the budget allows, before any is done."""
+        work = sum(map(self.declared.work, questions))
+        if work > self.work_budget:
+            words = f"This asks for {work / self.work_budget:.3g} times the work that one request may; ask for less."
+            fault = Fault("too_much_work", words, {"work": work, "limit": self.work_budget})
+            raise ValidationError({name: [fault] for name in place} or [fault])
 
     def _get(self, asked: Request) -> Response:
         assert self.query is not None  # noqa: S101 - GET is routed only where it is declared
@@ -86,7 +101,7 @@ class MountedEndpoint:
         if not_modified(asked, tag):
             return self.responder.respond(asked, b"", 304, self.responder.tagged(tag))
         try:
-            out = self._answer(self.query.ask(raw), fingerprint(self.path, b"?", raw))
+            out = self._answer_one(self.query.ask(raw), fingerprint(self.path, b"?", raw))
         except ValidationError as error:
             return self.problems.does_not_fit(asked, error, self.query)
         return self.responder.respond(asked, dump(out), headers=self.responder.tagged(tag))

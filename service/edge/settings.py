@@ -41,6 +41,8 @@ class Settings:
     """questions in one batch"""
     max_portfolios: int = DEFAULT_LIMITS.portfolios
     """portfolios in one ranking"""
+    work_budget: int = 2_500_000
+    """microseconds of computation that one request may ask for"""
     max_age_seconds: int = 3600
     """how long answers of GET may be kept by caches"""
     allowed_origins: tuple[str, ...] = ()
@@ -91,6 +93,7 @@ READERS: dict[str, Callable[[str], Any]] = {
     "max_entries": _whole(1, 10**7),
     "max_questions": _whole(1, 10**5),
     "max_portfolios": _whole(1, 10**6),
+    "work_budget": _whole(1000, 10**10),
     "max_age_seconds": _whole(0, 365 * 86400),
     "allowed_origins": _origins,
 }

@@ -12,6 +12,7 @@ from service.schemas.question import Asked, Question
 from service.schemas.shapes import ONE, Figure, Fixed, Group
 
 DEFAULT_POINTS = 200
+TRIAL_POINTS = 3_000
 
 
 class CurveQuestion(Question):
@@ -69,6 +70,7 @@ EXAMPLES = {
     examples=EXAMPLES,
     get=True,
     batch=False,
+    work=lambda asked: TRIAL_POINTS * (asked["distribution"].cost.event + asked["distribution"].cost.quantile),
     write=write_plain,
 )
 def curves(asked: Asked) -> Result:

@@ -8,6 +8,12 @@ from service.schemas.answers import AnswerShape, Result, write_answer
 from service.schemas.question import Asked, Question
 
 Write: TypeAlias = Callable[[Result, int | None, str | None], dict[str, Any]]
+Work: TypeAlias = Callable[[Asked], float]
+
+
+def hardly_any(asked: Asked) -> float:  # noqa: ARG001
+    """Count a question whose cost lies in reading and writing it."""
+    return 0.0
 
 
 @dataclass(frozen=True)
@@ -26,6 +32,8 @@ class Endpoint:
     """Requests by title, that tests send."""
     write: Write
     """Puts the figures into the form of the answer."""
+    work: Work
+    """Counts the microseconds that a question asks for, before anything is computed."""
 
 
 @dataclass(frozen=True)
@@ -54,11 +62,12 @@ def endpoint(
     get: bool = False,
     batch: bool = True,
     write: Write = write_answer,
+    work: Work = hardly_any,
 ) -> Callable[[Callable[[Asked], Result]], Callable[[Asked], Result]]:
     """Declare the function below as the answer to a question; its docstring is the operation's summary."""
 
     def add(compute: Callable[[Asked], Result]) -> Callable[[Asked], Result]:
-        ENDPOINTS.append(Endpoint(path, name, question, answers, compute, get, batch, examples, write))
+        ENDPOINTS.append(Endpoint(path, name, question, answers, compute, get, batch, examples, write, work))
         return compute
 
     return add

@@ -43,7 +43,15 @@ EXAMPLES = {
 }
 
 
-@endpoint("/v1/moments", name="Moments", question=MomentsQuestion, answers=(ANSWER,), examples=EXAMPLES, get=True)
+@endpoint(
+    "/v1/moments",
+    name="Moments",
+    question=MomentsQuestion,
+    answers=(ANSWER,),
+    examples=EXAMPLES,
+    get=True,
+    work=lambda asked: (asked.length or 1) * asked["distribution"].cost.description,
+)
 def moments(asked: Asked) -> Result:
     """Which figures describe this distribution?"""
     law = asked["distribution"]

@@ -52,6 +52,7 @@ EXAMPLES = {
     answers=(ANSWER,),
     examples=EXAMPLES,
     get=True,
+    work=lambda asked: (asked.length or 1) * asked["distribution"].cost.event,
 )
 def probabilities(asked: Asked) -> Result:
     """How likely is an event?"""

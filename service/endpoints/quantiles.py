@@ -72,6 +72,7 @@ EXAMPLES = {
     answers=(QUANTILE, INTERVAL),
     examples=EXAMPLES,
     get=True,
+    work=lambda asked: (asked.length or 1) * asked["distribution"].cost.quantile,
 )
 def quantiles(asked: Asked) -> Result:
     """Which value has this probability?"""

@@ -24,13 +24,14 @@ def test_every_setting_is_read() -> None:
         "SERVICE_MAX_ENTRIES": "10",
         "SERVICE_MAX_QUESTIONS": "11",
         "SERVICE_MAX_PORTFOLIOS": "12",
+        "SERVICE_WORK_BUDGET": "5000",
         "SERVICE_MAX_AGE_SECONDS": "13",
         "SERVICE_ALLOWED_ORIGINS": "https://app.example, http://localhost:5173",
     }
     assert set(given) == set(setting_names())
     found, strangers = read_settings(given)
     assert found == Settings(
-        "0.0.0.0:9000", 3, 5, 6, False, 2048, 10, 11, 12, 13, ("https://app.example", "http://localhost:5173")
+        "0.0.0.0:9000", 3, 5, 6, False, 2048, 10, 11, 12, 5000, 13, ("https://app.example", "http://localhost:5173")
     )
     assert strangers == []
     assert (found.limits.entries, found.limits.questions, found.limits.portfolios) == (10, 11, 12)

@@ -1,9 +1,12 @@
 """POST /v1/probabilities: forms, bounds, faults. GET is tested in tests/edge/test_queries.py."""
 
 import math
+from typing import Any, ClassVar
 
 import pytest
 
+from service.edge.app import create_app
+from service.edge.settings import Settings
 from tests.conftest import Asker
 
 PATH = "/v1/probabilities"
@@ -232,6 +235,34 @@ def test_the_first_hundred_faults_are_listed_and_all_are_counted(ask: Asker) -> 
 def test_too_many_entries_are_refused(ask: Asker) -> None:
     question = {"distribution": NORMAL, "event": {"below": [1] * 100_001}}
     assert ask.faults(PATH, question) == {"/event/below": "too_many"}
+
+
+class TestWork:
+    """Counted before it is computed, so that no question takes seconds."""
+
+    client = create_app(Settings(work_budget=1000)).test_client()
+    dear: ClassVar[dict[str, Any]] = {"family": "binomial", "trials": 20, "success_probability": [0.5] * 60}
+
+    def fault(self, path: str, body: object) -> Any:
+        response = self.client.post(path, json=body)
+        assert response.status_code == 422
+        return response.get_json()["errors"][0]
+
+    def test_one_question_beyond_the_budget_is_refused(self) -> None:
+        found = self.fault("/v1/moments", {"distribution": self.dear})
+        assert (found["pointer"], found["code"]) == ("", "too_much_work")
+        assert found["params"] == {"work": 60 * 22, "limit": 1000}
+
+    def test_a_batch_is_counted_together(self) -> None:
+        cheap = self.dear | {"success_probability": [0.5] * 30}
+        assert self.client.post("/v1/moments", json={"questions": [{"distribution": cheap}]}).status_code == 200
+        found = self.fault("/v1/moments", {"questions": [{"distribution": cheap}] * 2})
+        assert (found["pointer"], found["code"]) == ("/questions", "too_much_work")
+
+    def test_a_query_is_counted_too(self) -> None:
+        many = ",".join(["0.5"] * 60)
+        response = self.client.get(f"/v1/moments?family=binomial&trials=20&success_probability={many}")
+        assert response.get_json()["errors"][0]["code"] == "too_much_work"
 
 
 class TestBatch:

@@ -34,6 +34,14 @@ class Support(NamedTuple):
     upper: Numbers
 
 
+class Cost(NamedTuple):
+    """Microseconds for one entry of an array, measured on one core and rounded up."""
+
+    event: float = 3.0
+    quantile: float = 3.0
+    description: float = 6.0
+
+
 class Family(Declared):
     """Base of every family.
 
@@ -53,6 +61,8 @@ class Family(Declared):
     quantile_method: ClassVar[str] = "closed_form"
     numerical_error: ClassVar[float] = 0.0
     """Bound on the error of every figure: absolute for figures up to 1 in size, relative beyond."""
+    cost: ClassVar[Cost] = Cost()
+    """What an entry of an array costs, each a law of its own; the work of a question is counted from it."""
     _logs_first: ClassVar[bool] = False
 
     def __init_subclass__(cls) -> None:

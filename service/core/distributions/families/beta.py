@@ -3,7 +3,7 @@
 import numpy as np
 
 from service.core.arrays import NO_VALUE, Numbers, number
-from service.core.distributions.family import Family, Moments, Support, Tails
+from service.core.distributions.family import Cost, Family, Moments, Support, Tails
 from service.core.distributions.kernels.beta_quantile import beta_quantile
 from service.core.distributions.kernels.incomplete_beta import (
     beta_entropy,
@@ -27,6 +27,7 @@ class Beta(Family):
     method = "saddle_point_and_quadrature"
     quantile_method = "newton_on_log_tail"
     numerical_error = 1e-13
+    cost = Cost(4, 10, 16)
     alpha = positive("the pull towards 1", at_least=1e-3, at_most=1e12, example=2)
     beta = positive("the pull towards 0", at_least=1e-3, at_most=1e12, example=3)
 

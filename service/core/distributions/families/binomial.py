@@ -3,7 +3,7 @@
 import numpy as np
 
 from service.core.arrays import NO_VALUE, Numbers
-from service.core.distributions.family import Family, Moments, Support, Tails
+from service.core.distributions.family import Cost, Family, Moments, Support, Tails
 from service.core.distributions.kernels.elementary import two_product
 from service.core.distributions.kernels.incomplete_beta import log_beta_tails
 from service.core.distributions.kernels.lattice import lattice_entropy, lattice_quantile, smallest_mode
@@ -36,6 +36,7 @@ class Binomial(Family):
     method = "saddle_point_and_quadrature"
     quantile_method = "bisection_on_exact_tail"
     numerical_error = 1e-13
+    cost = Cost(3, 6, 22)
     trials = Parameter("the number of trials", whole=True, at_least=0, at_most=1e12, example=10)
     success_probability = Parameter("the probability of success of each trial", at_least=0, at_most=1, example=0.6)
 

@@ -6,7 +6,7 @@ import numpy as np
 from scipy.special import log_ndtr, ndtr, ndtri
 
 from service.core.arrays import INFINITY, MINUS_INFINITY, Numbers
-from service.core.distributions.family import Family, Moments, Support, Tails
+from service.core.distributions.family import Cost, Family, Moments, Support, Tails
 from service.core.distributions.kernels.cornish_fisher import (
     Expansion,
     entropy,
@@ -68,6 +68,7 @@ class CornishFisher(Family):
     name = "cornish_fisher"
     support_words = "every number"
     numerical_error = 1e-13
+    cost = Cost(9, 1, 36)
     mean = anywhere("the mean", example=0.05)
     standard_deviation = positive("the scale of the expansion", example=0.2)
     skewness = Parameter("the skewness put into the expansion", at_least=-3, at_most=3, example=-0.5)

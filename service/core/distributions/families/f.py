@@ -3,7 +3,7 @@
 import numpy as np
 
 from service.core.arrays import INFINITY, NO_VALUE, Numbers, number
-from service.core.distributions.family import Family, Moments, Support, Tails
+from service.core.distributions.family import Cost, Family, Moments, Support, Tails
 from service.core.distributions.kernels.beta_quantile import beta_quantile
 from service.core.distributions.kernels.incomplete_beta import log_beta_density, log_beta_tails, odds_entropy
 from service.core.distributions.kernels.logarithms import smaller_tail
@@ -22,6 +22,7 @@ class F(Family):
     method = "saddle_point_and_quadrature"
     quantile_method = "newton_on_log_tail"
     numerical_error = 1e-13
+    cost = Cost(4, 12, 16)
     numerator_degrees_of_freedom = positive("of the variance above", at_least=2e-3, at_most=1e12, example=5)
     denominator_degrees_of_freedom = positive("of the variance below", at_least=2e-3, at_most=1e12, example=10)
 

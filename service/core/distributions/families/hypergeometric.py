@@ -5,7 +5,7 @@ from functools import cached_property
 import numpy as np
 
 from service.core.arrays import NO_VALUE, Numbers
-from service.core.distributions.family import Family, Moments, Support, Tails
+from service.core.distributions.family import Cost, Family, Moments, Support, Tails
 from service.core.distributions.kernels.hypergeometric import log_hypergeometric_mass, log_hypergeometric_tails
 from service.core.distributions.kernels.lattice import lattice_entropy, lattice_quantile, smallest_mode
 from service.core.parameters import Order, Parameter
@@ -25,6 +25,7 @@ class Hypergeometric(Family):
     method = "saddle_point_and_quadrature"
     quantile_method = "bisection_on_exact_tail"
     numerical_error = 1e-13
+    cost = Cost(3, 12, 70)
     population = Parameter("how many there are", whole=True, at_least=1, at_most=1e12, example=50)
     marked = Parameter("how many of them are of the marked kind", whole=True, at_least=0, at_most=1e12, example=5)
     draws = Parameter("how many are drawn", whole=True, at_least=0, at_most=1e12, example=10)

@@ -5,7 +5,7 @@ from collections.abc import Iterator, Mapping
 import numpy as np
 
 from service.core.arrays import INFINITY, NO_VALUE, Numbers, number
-from service.core.distributions.family import Family, Moments, Support, Tails
+from service.core.distributions.family import Cost, Family, Moments, Support, Tails
 from service.core.distributions.kernels.elementary import two_product
 from service.core.distributions.kernels.incomplete_beta import log_beta_tails
 from service.core.distributions.kernels.lattice import lattice_quantile, long_lattice_entropy, smallest_mode
@@ -66,6 +66,7 @@ class NegativeBinomial(Family):
     method = "saddle_point_and_quadrature"
     quantile_method = "bisection_on_exact_tail"
     numerical_error = 1e-13
+    cost = Cost(5, 20, 85)
     successes = positive("the number of successes waited for", at_least=1e-3, at_most=1e10, example=3)
     success_probability = positive("the probability of success of each trial", at_least=1e-9, at_most=1, example=0.4)
     rules = (WithinExactCounts(),)

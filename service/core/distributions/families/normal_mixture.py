@@ -6,7 +6,7 @@ import numpy as np
 from scipy.special import log_ndtr, logsumexp, ndtr, ndtri_exp
 
 from service.core.arrays import INFINITY, MINUS_INFINITY, Numbers, flat
-from service.core.distributions.family import Family, Moments, Support, Tails
+from service.core.distributions.family import Cost, Family, Moments, Support, Tails
 from service.core.distributions.kernels.logarithms import smaller_tail
 from service.core.distributions.kernels.mixture import log_mixture_density, mixture_entropy, mixture_mode
 from service.core.distributions.kernels.newton import newton_on_log_tail
@@ -24,6 +24,7 @@ class NormalMixture(Family):
     support_words = "every number"
     quantile_method = "newton_on_log_tail"
     numerical_error = 2e-13
+    cost = Cost(2, 4, 12)
     components = Components(
         "the normal laws that are mixed",
         share="weight",

@@ -4,7 +4,7 @@ import numpy as np
 from scipy.special import ndtri_exp
 
 from service.core.arrays import INFINITY, MINUS_INFINITY, Numbers, flat
-from service.core.distributions.family import Family, Moments, Support, Tails
+from service.core.distributions.family import Cost, Family, Moments, Support, Tails
 from service.core.distributions.kernels.logarithms import LOG_HALF, smaller_tail
 from service.core.distributions.kernels.newton import newton_on_log_tail
 from service.core.distributions.kernels.skew_normal import log_skew_density, log_skew_tails, skew_entropy, skew_mode
@@ -31,6 +31,7 @@ class SkewNormal(Family):
     method = "quadrature"
     quantile_method = "newton_on_log_tail"
     numerical_error = 2e-13
+    cost = Cost(4, 10, 22)
     location = anywhere("the place of the law", example=0.1)
     scale = positive("the width", example=0.2)
     shape = Parameter("the lean: below 0 to the left", at_least=-1e6, at_most=1e6, example=-2)

@@ -6,7 +6,7 @@ import numpy as np
 from scipy.special import log_ndtr, ndtri_exp
 
 from service.core.arrays import Numbers, flat
-from service.core.distributions.family import Family, Moments, Support, Tails
+from service.core.distributions.family import Cost, Family, Moments, Support, Tails
 from service.core.distributions.kernels.cut_moments import cut_moments
 from service.core.distributions.kernels.elementary import HALF_LOG_2PI
 from service.core.distributions.kernels.logarithms import smaller_tail
@@ -87,6 +87,7 @@ class TruncatedNormal(Family):
     method = "quadrature"
     quantile_method = "newton_on_log_tail"
     numerical_error = 4e-13
+    cost = Cost(21, 2, 45)
     mean = anywhere("the mean of the whole normal law", example=0.05)
     standard_deviation = positive("the standard deviation of the whole normal law", example=0.2)
     lower = anywhere("the lower end", example=-0.3)
