@@ -12,7 +12,8 @@ from service.edge.process_paths import PROCESS_PATHS
 from service.edge.respond import JSON
 from service.edge.responses import ALWAYS, HELD, answered, failures, problem_responses
 from service.endpoints.declaration import Catalogue, Endpoint
-from service.schemas.fields import StrictField, class_name, closed_object, reference
+from service.schemas.fields import StrictField
+from service.schemas.json_schema import class_name, closed_object, reference
 from service.schemas.question import Question
 from service.schemas.shapes import COMPONENTS, COUNT, TAIL, constant, open_object
 

@@ -5,7 +5,7 @@ from typing import Any
 
 from service.edge.problems import KINDS, MEDIA_TYPE
 from service.edge.respond import JSON
-from service.schemas.fields import reference
+from service.schemas.json_schema import reference
 
 BARE = {
     404: "There is nothing at this address.",

@@ -8,8 +8,9 @@ from service.endpoints.declaration import endpoint
 from service.schemas.answers import AnswerShape, Plain, Result, Single, write_plain
 from service.schemas.assets import AssetsField, WeightLimitsField
 from service.schemas.cautions import beside_shortfalls, sentence
-from service.schemas.fields import ChoiceField, GroupField, LevelsField, NumberField
+from service.schemas.fields import ChoiceField, LevelsField, NumberField
 from service.schemas.floor_question import DEFAULT_LEVELS, DEFAULT_QUANTILE_PROBABILITY, MOST_LEVELS
+from service.schemas.members import GroupField
 from service.schemas.question import Asked, Question
 from service.schemas.shapes import ONE, TEXT, Each, Figure, Fixed
 from service.schemas.shortfall import shortfall_shape, shortfall_values

@@ -16,11 +16,13 @@ from service.endpoints.declaration import endpoint
 from service.schemas.answers import Result
 from service.schemas.assets import AssetsField
 from service.schemas.cautions import about_mixes, beside_shortfalls, sentence
-from service.schemas.fields import ChoiceField, GroupField, MatrixField, NumberField
+from service.schemas.fields import ChoiceField, MatrixField, NumberField
 from service.schemas.floor_question import FloorQuestion, floor_of, settings_of, slips_in
-from service.schemas.portfolio import ColumnsField, Portfolio, PortfolioListField, resolved
+from service.schemas.members import GroupField
+from service.schemas.portfolio import Portfolio, PortfolioListField, resolved
 from service.schemas.question import Asked
 from service.schemas.ranking import COLUMNS, ROWS, ranking_cautions, ranking_values, write_ranking
+from service.schemas.returns import ColumnsField
 
 
 class RankingQuestion(FloorQuestion):

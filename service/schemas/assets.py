@@ -9,21 +9,10 @@ from service.core.parameters import Parameter
 from service.core.portfolio.assets import MODELS, Assets
 from service.core.returns import PERIODS_PER_YEAR
 from service.schemas.faults import refuse, required
-from service.schemas.fields import (
-    ChoiceField,
-    Given,
-    LevelsField,
-    MatrixField,
-    NumberField,
-    StrictField,
-    TextField,
-    closed_object,
-    read_members,
-    read_object,
-    read_rows,
-    reference,
-)
-from service.schemas.portfolio import LONGEST_NAME, PERIODS_A_YEAR, SAMPLE_SIZE, check_count
+from service.schemas.fields import ChoiceField, Given, LevelsField, MatrixField, NumberField, StrictField, TextField
+from service.schemas.json_schema import closed_object, reference
+from service.schemas.members import read_members, read_object, read_rows
+from service.schemas.returns import LONGEST_NAME, PERIODS_A_YEAR, SAMPLE_SIZE, check_count
 
 MOST = 200
 NEEDED = ("names", "expected_returns", "volatilities", "correlations")

@@ -7,7 +7,9 @@ from marshmallow import ValidationError
 
 from service.core.declared import Declared, Parameterisation
 from service.schemas.faults import Fault, closest_to, required, shown, unknown
-from service.schemas.fields import Given, StrictField, class_name, closed_object, read_object, reference
+from service.schemas.fields import Given, StrictField
+from service.schemas.json_schema import class_name, closed_object, reference
+from service.schemas.members import read_object
 from service.schemas.numbers import parameter_schema, read_parameter
 
 

@@ -8,7 +8,9 @@ from marshmallow import ValidationError
 from service.core.distributions.events import Event
 from service.core.parameters import Parameter
 from service.schemas.faults import Fault, unknown
-from service.schemas.fields import Given, StrictField, closed_object, read_object, reference
+from service.schemas.fields import Given, StrictField
+from service.schemas.json_schema import closed_object, reference
+from service.schemas.members import read_object
 from service.schemas.numbers import number_list, parameter_schema, read_parameter
 
 BOUNDS = {

@@ -11,12 +11,9 @@ from marshmallow.fields import Field
 from service.core.arrays import Numbers
 from service.core.errors import DoesNotFit
 from service.core.parameters import Parameter
-from service.schemas.faults import Fault, as_messages, closest_to, refuse, required, unknown
+from service.schemas.faults import as_messages, closest_to, refuse
 from service.schemas.limits import DEFAULT_LIMITS, Limits
 from service.schemas.numbers import number_list, number_schema, parameter_schema, read_array, read_parameter
-
-NULL_OR_ABSENT = {"type": "null"}
-"""How a field that belongs to another branch of a union is printed: null is the same as left out."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,112 +94,6 @@ class NumberField(StrictField):
         yield name, self.meaning, number_list(self.limits)
 
 
-def read_members(
-    given: Mapping[str, Any], inner: Mapping[str, StrictField], limits: Limits
-) -> tuple[dict[str, Any], dict[str, Any]]:
-    """Read the members of an object; give what was found, and the faults."""
-    found: dict[str, Any] = {}
-    faults: dict[str, Any] = {}
-    for name, entry in given.items():
-        field = inner.get(name)
-        if field is None:
-            missing = [n for n, f in inner.items() if f.required and n not in given]
-            faults[name] = [unknown(name, inner, missing)]
-            continue
-        field.name, field.limits = name, limits
-        try:
-            found[name] = field.read(entry)
-        except ValidationError as error:
-            faults[name] = error.messages
-    return found, faults
-
-
-def read_rows(
-    value: Any, inner: Mapping[str, StrictField], needed: Iterable[str], limits: Limits
-) -> list[dict[str, Any]]:
-    """Read a list of objects that each need some of their members. Raises ValidationError."""
-    if type(value) is not list:
-        raise refuse("not_an_array", "A JSON array of objects is needed.")
-    if not value:
-        raise refuse("empty", "A list needs an entry.")
-    if len(value) > limits.assets:
-        raise refuse(
-            "too_many",
-            f"At most {limits.assets} entries; these are {len(value)}.",
-            given=len(value),
-            limit=limits.assets,
-        )
-    rows: list[dict[str, Any]] = []
-    faults: dict[int, Any] = {}
-    for index, entry in enumerate(value):
-        if type(entry) is not dict:
-            faults[index] = [Fault("not_an_object", "A JSON object is needed.")]
-            continue
-        row = read_object(entry)
-        found, wrong = read_members(row, inner, limits)
-        wrong |= {name: [required(name)] for name in needed if name not in row}
-        rows.append(found)
-        if wrong:
-            faults[index] = wrong
-    if faults:
-        raise ValidationError(faults)
-    return rows
-
-
-class GroupField(StrictField):
-    """An object of fields that may each be left out."""
-
-    def __init__(self, meaning: str, inner: Mapping[str, StrictField]) -> None:
-        super().__init__(meaning)
-        self.inner = inner
-
-    def read(self, value: Any) -> dict[str, Any]:
-        found, faults = read_members(read_object(value), self.inner, self.limits)
-        if faults:
-            raise ValidationError(faults)
-        return found
-
-    def printed(self, components: dict[str, Any]) -> dict[str, Any]:
-        for field in self.inner.values():
-            field.limits = self.limits
-        members = {name: field.printed(components) for name, field in self.inner.items()}
-        return closed_object(members, optional=members, description=self.meaning)
-
-
-class MatrixField(StrictField):
-    """A square matrix of numbers, row by row."""
-
-    most = 1000
-
-    def read(self, value: Any) -> Numbers:
-        if type(value) is not list or not all(type(row) is list for row in value):
-            raise refuse("not_an_array", "A JSON array of rows is needed, each an array of numbers.")
-        if not value:
-            raise refuse("empty", "A matrix needs a row.")
-        if len(value) > self.most:
-            raise refuse("too_many", f"At most {self.most} rows.", given=len(value), limit=self.most)
-        rows, faults = [], {}
-        for index, row in enumerate(value):
-            try:
-                rows.append(read_array(row, self.most))
-                if len(row) != len(value):
-                    raise refuse(
-                        "lengths_differ",
-                        f"A square matrix of {len(value)} rows needs as many columns.",
-                        given=len(row),
-                        expected=len(value),
-                    )
-            except ValidationError as error:
-                faults[index] = error.messages
-        if faults:
-            raise ValidationError(faults)
-        return np.stack(rows)
-
-    def printed(self, components: dict[str, Any]) -> dict[str, Any]:  # noqa: ARG002
-        row = {"type": "array", "items": {"type": "number", "format": "double"}, "minItems": 1, "maxItems": self.most}
-        return {"type": "array", "items": row, "minItems": 1, "maxItems": self.most, "description": self.meaning}
-
-
 class LevelsField(StrictField):
     """A short list of numbers within declared limits, which does not set the length of the question."""
 
@@ -272,33 +163,35 @@ class TextField(StrictField):
         return {"type": "string", "maxLength": self.most, "description": self.meaning}
 
 
-def read_object(value: Any) -> dict[str, Any]:
-    """Refuse what is no JSON object; null members are the same as left out."""
-    if type(value) is not dict:
-        raise refuse("not_an_object", "A JSON object is needed.")
-    return {name: entry for name, entry in value.items() if entry is not None}
+class MatrixField(StrictField):
+    """A square matrix of numbers, row by row."""
 
+    most = 1000
 
-def closed_object(
-    members: Mapping[str, Any], *, optional: Iterable[str] = (), never: Iterable[str] = (), **more: Any
-) -> dict[str, Any]:
-    """Print an object of exactly these members; those of the union's other branches may only be null."""
-    others = {name: NULL_OR_ABSENT for name in never if name not in members}
-    left_out = set(optional)
-    return {
-        "type": "object",
-        "properties": {**members, **others},
-        "required": [name for name in members if name not in left_out],
-        "additionalProperties": False,
-        **more,
-    }
+    def read(self, value: Any) -> Numbers:
+        if type(value) is not list or not all(type(row) is list for row in value):
+            raise refuse("not_an_array", "A JSON array of rows is needed, each an array of numbers.")
+        if not value:
+            raise refuse("empty", "A matrix needs a row.")
+        if len(value) > self.most:
+            raise refuse("too_many", f"At most {self.most} rows.", given=len(value), limit=self.most)
+        rows, faults = [], {}
+        for index, row in enumerate(value):
+            try:
+                rows.append(read_array(row, self.most))
+                if len(row) != len(value):
+                    raise refuse(
+                        "lengths_differ",
+                        f"A square matrix of {len(value)} rows needs as many columns.",
+                        given=len(row),
+                        expected=len(value),
+                    )
+            except ValidationError as error:
+                faults[index] = error.messages
+        if faults:
+            raise ValidationError(faults)
+        return np.stack(rows)
 
-
-def reference(name: str) -> dict[str, str]:
-    """Refer to a component."""
-    return {"$ref": f"#/components/schemas/{name}"}
-
-
-def class_name(name: str) -> str:
-    """Turn a name of the contract into that of a component: student_t, StudentT."""
-    return "".join(word.title() for word in name.split("_"))
+    def printed(self, components: dict[str, Any]) -> dict[str, Any]:  # noqa: ARG002
+        row = {"type": "array", "items": {"type": "number", "format": "double"}, "minItems": 1, "maxItems": self.most}
+        return {"type": "array", "items": row, "minItems": 1, "maxItems": self.most, "description": self.meaning}

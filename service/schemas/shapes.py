@@ -4,7 +4,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any, TypeAlias
 
-from service.schemas.fields import reference
+from service.schemas.json_schema import reference
 
 ONE: dict[str, Any] = {"type": ["number", "null"], "format": "double"}
 MANY: dict[str, Any] = {"type": ["array", "null"], "items": ONE}

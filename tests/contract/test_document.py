@@ -111,8 +111,9 @@ def test_types_can_be_generated_from_the_document() -> None:
 def test_requests_are_closed_and_answers_open() -> None:
     for name, component in DOCUMENT["components"]["schemas"].items():
         if component.get("type") == "object":
-            is_request = name.endswith(("Question", "Batch", "Distribution", "Returns", "Columns", "Portfolio"))
-            is_request = is_request or ("Distribution" in name and "By" in name)
+            is_request = name in ("Assets", "Event") or name.startswith("Portfolio")
+            is_request |= name.endswith(("Question", "Batch", "Distribution", "Returns", "Columns"))
+            is_request |= "DistributionBy" in name or "ReturnsBy" in name
             assert (component.get("additionalProperties") is False) == is_request, name
 
 

@@ -249,7 +249,7 @@ def test_daily_returns_of_three_indices_are_ranked_by_what_counting_gives(ask: A
             {"/portfolio_columns/model": "unknown_model"},
         ),
         (QUESTION | {"questions": []}, {"/questions": "unknown_field"}),
-        (QUESTION | {"horizon_years": 3}, {"/horizon_years": "horizon_not_available"}),
+        (QUESTION | {"horizon_years": 2.5}, {"/horizon_years": "horizon_not_divisible"}),
     ],
 )
 def test_what_does_not_fit_is_named_by_pointer_and_code(ask: Asker, question: object, expected: dict[str, str]) -> None:

@@ -108,8 +108,10 @@ def test_a_period_of_its_own_length(ask: Asker) -> None:
     answer = ask.answer(PATH, question | {"horizon_years": 1 / 252})
     assert answer["shortfall_probability"] == pytest.approx(np.mean(np.array(observations) < 0))
     assert answer["basis"]["method"] == "counting"
-    # a year is 252 such days, which this version does not compound
-    assert ask.faults(PATH, question) == {"/horizon_years": "horizon_not_available"}
+    # two days: all 25 pairs, counted
+    growth = np.multiply.outer(1 + np.array(observations), 1 + np.array(observations))
+    answer = ask.answer(PATH, question | {"horizon_years": 2 / 252})
+    assert answer["shortfall_probability"] == pytest.approx(np.mean(growth < 1))
 
 
 @pytest.mark.parametrize(
@@ -157,7 +159,6 @@ def test_a_period_of_its_own_length(ask: Asker) -> None:
         ({"portfolio": BALANCED, "threshold": -1}, {"/threshold": "must_be_above"}),
         ({"portfolio": BALANCED, "threshold": [0, -2]}, {"/threshold/1": "must_be_above"}),
         ({"portfolio": BALANCED, "threshold": 0, "horizon_years": 0}, {"/horizon_years": "must_be_positive"}),
-        ({"portfolio": BALANCED, "threshold": 0, "horizon_years": 2}, {"/horizon_years": "horizon_not_available"}),
         ({"portfolio": BALANCED, "threshold": 0, "horizon_years": 1.5}, {"/horizon_years": "horizon_not_divisible"}),
         (
             {"portfolio": BALANCED, "threshold": 0, "confidence_levels": [0.9, 1]},
@@ -199,5 +200,5 @@ def test_a_batch_of_shortfalls(ask: Asker) -> None:
     questions = [{"portfolio": BALANCED, "threshold": floor} for floor in (0.0, 0.02)]
     batch = ask.answer(PATH, {"questions": questions})
     assert batch["answers"][1]["shortfall_probability"] == pytest.approx(0.34457825839, rel=1e-10)
-    questions[1] = questions[1] | {"horizon_years": 2}
-    assert ask.faults(PATH, {"questions": questions}) == {"/questions/1/horizon_years": "horizon_not_available"}
+    questions[1] = questions[1] | {"horizon_years": 1.5}
+    assert ask.faults(PATH, {"questions": questions}) == {"/questions/1/horizon_years": "horizon_not_divisible"}
