@@ -57,6 +57,12 @@ class HorizonLaw:
     numerical_error_kind: str = "bound"
     numerical_error: float
     """Bound on the error of every figure: absolute for figures up to 1 in size, relative beyond."""
+    discrete: bool = False
+    """Whether single outcomes have probabilities and the quantiles jump, listed by `atoms` or too many for it."""
+    cautions: tuple[str, ...] = ()
+    """Codes of what a reader of any figure has to know."""
+    work: float = 0.0
+    """Multiplications that making the law took, where they are many."""
 
     def mean(self) -> Numbers:
         """E[R]."""

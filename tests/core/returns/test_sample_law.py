@@ -83,7 +83,7 @@ def test_thresholds_in_an_array_are_answered_side_by_side() -> None:
     found = sample_law([-0.1, 0.0, 0.2])
     thresholds = np.array([-0.1, 0.05, 0.3])
     assert found.probability_below(thresholds).tolist() == pytest.approx([0, 2 / 3, 1])
-    assert found.certain(thresholds).all()
+    assert found.certain(thresholds).tolist() == [True, False, True]
     assert found.gaps(thresholds).order_1.tolist() == pytest.approx([0, (0.15 + 0.05) / 3, (0.4 + 0.3 + 0.1) / 3])
 
 

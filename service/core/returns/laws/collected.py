@@ -40,6 +40,8 @@ class CollectedLaw(HorizonLaw):
         methods = {law.method for law, _ in parts}
         self.method = methods.pop() if len(methods) == 1 else "several_methods"
         self.numerical_error_kind = max(law.numerical_error_kind for law, _ in parts)  # "estimate" if any is one
+        self.cautions = tuple(sorted({caution for law, _ in parts for caution in law.cautions}))
+        self.work = sum(law.work for law, _ in parts)
 
     def _joined(self, figure: Callable[[HorizonLaw], npt.NDArray[T]]) -> npt.NDArray[T]:
         return side_by_side([figure(law) for law, _ in self.parts], [at for _, at in self.parts], self.count)

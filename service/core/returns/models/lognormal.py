@@ -2,12 +2,13 @@
 
 import numpy as np
 
-from service.core.arrays import NO_VALUE, Numbers
+from service.core.arrays import Numbers
 from service.core.distributions.family import Moments
 from service.core.parameters import Parameter
 from service.core.returns.law import HorizonLaw
 from service.core.returns.laws.exponential_t import predictive_log_growth
 from service.core.returns.laws.lognormal import LognormalLaw, growth_moments
+from service.core.returns.lognormal_growth import growth_return_moments, log_parameters
 from service.core.returns.model import LARGEST, ReturnModel
 
 
@@ -25,29 +26,16 @@ class Lognormal(ReturnModel):
     expected_return = Parameter("mean return of one period", above=-1, at_most=LARGEST, example=0.06)
     volatility = Parameter("standard deviation of the return of one period", at_least=0, at_most=LARGEST, example=0.1)
 
-    def _relative_variance(self) -> Numbers:
-        return (self.volatility / (1 + self.expected_return)) ** 2
-
     def moments(self) -> Moments:
-        square = self._relative_variance()
-        mean, deviation, square = np.broadcast_arrays(self.expected_return, self.volatility, square)
-        w = 1 + square
-        spread = deviation > 0
-        skewness = np.where(spread, np.sqrt(square) * (3 + square), NO_VALUE)
-        excess = np.where(spread, square * (((w + 3) * w + 6) * w + 6), NO_VALUE)
-        return Moments(mean, deviation, skewness, excess)
-
-    def _log_parameters(self) -> tuple[Numbers, Numbers]:
-        variance = np.log1p(self._relative_variance())
-        return np.log1p(self.expected_return) - variance / 2, variance
+        return growth_return_moments(self.expected_return, self.volatility)
 
     def horizon_law(self, periods: Numbers, compounding: str) -> HorizonLaw:  # noqa: ARG002 - simple alone
-        log_mean, variance = self._log_parameters()
+        log_mean, variance = log_parameters(self.expected_return, self.volatility)
         moments = self.expected_return, self.volatility
         if periods != 1:
             moments = growth_moments(periods * np.log1p(self.expected_return), periods * variance)
         return LognormalLaw(periods * log_mean, np.sqrt(periods * variance), moments)
 
     def predictive_law(self, periods: Numbers, compounding: str, sample_size: Numbers) -> HorizonLaw:  # noqa: ARG002
-        log_mean, variance = self._log_parameters()
+        log_mean, variance = log_parameters(self.expected_return, self.volatility)
         return predictive_log_growth(log_mean, np.sqrt(variance), periods, sample_size)
