@@ -1,0 +1,1 @@
+"""The law of growth over many periods, from the law of one."""
