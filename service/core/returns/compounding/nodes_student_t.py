@@ -1,0 +1,64 @@
+"""Log growth by a return with Student's t."""
+
+import numpy as np
+
+from service.core.arrays import Numbers
+from service.core.distributions.kernels.student_t import log_t_density
+from service.core.returns.compounding.step import Part, evenly
+from service.core.returns.laws.student_t import t_at, t_at_most
+
+LEFT_END = -40.0
+STRAIGHT_BELOW = 0.25
+"""With the total loss so close to the centre, or above it, log growth itself is a good variable."""
+NEGLIGIBLE = 1e-17
+
+
+class StudentTPart(Part):
+    """1 + Y = 1 + location + scale T with scale > 0; X = log(1 + Y) where that has a value.
+
+    In units of the scale the loss lies at -a, a = (1 + location)/scale. The rule runs over t with
+    X = log(1 + location) + asinh(k sinh(t)/(2 a)), k = min(sqrt(v), 4): logarithmic towards the loss, linear about the
+    centre, logarithmic again on the right. For a < 1/4 over X itself.
+    """
+
+    smooth = True
+
+    def __init__(self, degrees_of_freedom: Numbers, location: Numbers, scale: Numbers) -> None:
+        self.v, self.location, self.scale = degrees_of_freedom, location, scale
+        self._a = (1 + location) / scale
+
+    @property
+    def zero_probability(self) -> Numbers:
+        """P(G = 0)."""
+        return t_at_most(self.v, -self._a)
+
+    def density(self, x: Numbers) -> Numbers:
+        growth = np.exp(x) / self.scale
+        return np.exp(log_t_density(self.v, growth - self._a)) * growth
+
+    def nodes(self, highest: float) -> tuple[Numbers, Numbers]:
+        farthest = -t_at(self.v, np.float64(NEGLIGIBLE))  # type: ignore[arg-type]  # numpy's scalar stands for an array
+        if self._a < STRAIGHT_BELOW:
+            return self._straight(highest, float(farthest))
+        return self._bent(highest, float(farthest))
+
+    def _straight(self, highest: float, farthest: float) -> tuple[Numbers, Numbers]:
+        last = float(np.log(self.scale * (farthest + max(float(self._a), 0.0))))
+        first = float(np.log(self.scale)) + LEFT_END
+        x = evenly(first, max(last, first + 45), highest + 46)
+        return x, self.density(x) * (x[1] - x[0])
+
+    def _bent(self, highest: float, farthest: float) -> tuple[Numbers, Numbers]:
+        a, bend = float(self._a), min(float(np.sqrt(self.v)), 4.0)
+        log_at_loss = float(log_t_density(self.v, np.asarray(a))) + np.log(a)
+        depth = min(max(0.3, 38 + log_at_loss), 60.0)
+        first = -float(np.arcsinh(2 * a / bend * np.sinh(depth)))
+        first = min(first, -float(np.arcsinh(2 / bend * min(a, 9.0))))
+        last = float(np.arcsinh(2 * a / bend * np.sinh(np.log1p(farthest / a))))
+        rise = 1.0 if log_at_loss > -69 else min(1.0, max(bend / (2 * a) * float(np.cosh(1.0)), 0.05))
+        t = evenly(first, last, highest * rise + (29 if self.v <= 6 else 46))
+        q = bend * np.sinh(t) / (2 * a)
+        beside = np.arcsinh(q)
+        z = a * np.expm1(beside)
+        slope = a * np.exp(beside) * bend * np.cosh(t) / (2 * a) / np.hypot(1.0, q)
+        return np.log1p(self.location) + beside, np.exp(log_t_density(self.v, z)) * slope * (t[1] - t[0])
