@@ -83,9 +83,10 @@ def _question_components(declared: Endpoint, question: Question, components: dic
     others = [*fields, *(["questions"] if declared.batch else [])]
     names = []
     for told_by, own in question.ways().items():
-        name = f"{declared.name}{'By' + class_name(told_by) if told_by else ''}Question"
+        way = "By" + "And".join(map(class_name, told_by)) if told_by else ""
+        name = f"{declared.name}{way}Question"
         members = {n: fields[n].printed(components) for n in own}
-        optional = [n for n in members if not fields[n].required and n != told_by]
+        optional = [n for n in members if not fields[n].required and n not in told_by]
         components[name] = closed_object(
             members, optional=optional, never=others, description=(type(question).__doc__ or "").strip()
         )

@@ -17,7 +17,7 @@ from service.schemas.slips import spread_in_percent
 class QuantileQuestion(Question):
     """Which value has a given probability, or which interval a given coverage?"""
 
-    told_by = ("probability", "coverage")
+    one_of = (("probability", "coverage"),)
     belongs_to: ClassVar[Mapping[str, str]] = {"tail": "probability"}
     distribution = DistributionField("the law", required=True)
     probability = NumberField(

@@ -28,7 +28,7 @@ from service.schemas.returns import ColumnsField
 class RankingQuestion(FloorQuestion):
     """Which portfolio is the safest for a floor?"""
 
-    told_by = ("portfolios", "portfolio_columns")
+    one_of = (("portfolios", "portfolio_columns"),)
     belongs_to: ClassVar[Mapping[str, str]] = {"assets": "portfolios"}
     portfolios = PortfolioListField("the portfolios to compare")
     assets = AssetsField("the assets that portfolios by weights are made of")

@@ -140,6 +140,18 @@ class ChoiceField(StrictField):
         return {"type": "string", "enum": list(self.allowed), "description": self.meaning}
 
 
+class TruthField(StrictField):
+    """true or false."""
+
+    def read(self, value: Any) -> bool:
+        if type(value) is not bool:
+            raise refuse("not_true_or_false", "true or false is needed.")
+        return value
+
+    def printed(self, components: dict[str, Any]) -> dict[str, Any]:  # noqa: ARG002
+        return {"type": "boolean", "description": self.meaning}
+
+
 class TextField(StrictField):
     """Text that is echoed unchanged."""
 

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
+from itertools import product
 from typing import Any, ClassVar
 
 import numpy as np
@@ -9,7 +10,7 @@ from marshmallow import RAISE, Schema, ValidationError
 
 from service.core.arrays import number
 from service.core.errors import DoesNotFit
-from service.schemas.faults import Fault, as_messages, refuse, required, unknown
+from service.schemas.faults import WHOLE, Fault, as_messages, refuse, required, unknown
 from service.schemas.fields import MISSING, Given
 from service.schemas.limits import Limits
 
@@ -42,8 +43,8 @@ class Question(Schema):
 
         unknown = RAISE
 
-    told_by: ClassVar[tuple[str, ...]] = ()
-    """Fields of which exactly one is given; it tells which way of asking is meant. Empty: there is one way."""
+    one_of: ClassVar[tuple[tuple[str, ...], ...]] = ()
+    """Groups of fields of each of which exactly one is given, and tells which way of asking is meant."""
     belongs_to: ClassVar[Mapping[str, str]] = {}
     """Other fields that go together with one way of asking alone."""
     arrays: ClassVar[bool] = True
@@ -77,7 +78,7 @@ class Question(Schema):
         if type(data) is not dict:
             raise refuse("not_an_object", "A JSON object is needed.")
         loaded = {name: value for name, value in self.load(data).items() if value is not None}
-        if self.told_by:
+        if self.one_of:
             self._check_way(loaded)
         if not self.arrays:
             refuse_arrays(loaded)
@@ -85,31 +86,28 @@ class Question(Schema):
         return Asked(self._make(loaded), {n: v.numbers if type(v) is Given else v for n, v in loaded.items()}, length)
 
     def _check_way(self, loaded: Mapping[str, Any]) -> None:
-        told = [name for name in self.told_by if name in loaded]
-        if not told:
-            raise refuse("required", f"One of {' and '.join(self.told_by)} is needed.", one_of=list(self.told_by))
-        strangers = [*told[1:], *(n for n, home in self.belongs_to.items() if n in loaded and home != told[0])]
-        if strangers:
-            raise ValidationError(
-                {
-                    name: [
-                        Fault(
-                            "does_not_go_together",
-                            f"{name} does not go together with {told[0]}.",
-                            {"beside": [told[0]]},
-                        )
-                    ]
-                    for name in strangers
-                }
-            )
+        faults: dict[str, Any] = {}
+        for group in self.one_of:
+            told = [name for name in group if name in loaded]
+            if not told:
+                words = f"One of {' and '.join(group)} is needed."
+                faults.setdefault(WHOLE, []).append(Fault("required", words, {"one_of": list(group)}))
+                continue
+            strangers = [n for n, home in self.belongs_to.items() if n in loaded and home in group and home != told[0]]
+            for name in (*told[1:], *strangers):
+                words = f"{name} does not go together with {told[0]}."
+                faults[name] = [Fault("does_not_go_together", words, {"beside": [told[0]]})]
+        if faults:
+            raise ValidationError(faults)
 
-    def ways(self) -> dict[str | None, list[str]]:
-        """Give the fields of each way of asking, by the field that tells it (None: there is one way)."""
-        if not self.told_by:
-            return {None: list(self.fields)}
+    def ways(self) -> dict[tuple[str, ...], list[str]]:
+        """Give the fields of each way of asking, by the fields that tell it."""
+        telling = {name for group in self.one_of for name in group}
         return {
-            way: [n for n in self.fields if (n == way or n not in self.told_by) and self.belongs_to.get(n, way) == way]
-            for way in self.told_by
+            told: [
+                n for n in self.fields if n in told or (n not in telling and self.belongs_to.get(n, n) in (n, *told))
+            ]
+            for told in product(*self.one_of)
         }
 
     @staticmethod
