@@ -1,13 +1,14 @@
 """A tagged union of declared classes: the field that reads and prints it, derived from their registry."""
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from typing import Any, ClassVar
 
 from marshmallow import ValidationError
 
 from service.core.declared import Declared, Parameterisation
+from service.core.returns.model import Option
 from service.schemas.faults import Fault, closest_to, required, shown, unknown
-from service.schemas.fields import Given, StrictField
+from service.schemas.fields import ChoiceField, Given, StrictField
 from service.schemas.json_schema import class_name, closed_object, reference
 from service.schemas.members import read_object
 from service.schemas.numbers import parameter_schema, read_parameter
@@ -34,8 +35,8 @@ class DeclaredField(StrictField):
         given = read_object(value)
         kind = self._kind(given.pop(self.tag, None))
         own = {name: given.pop(name) for name in self.extras if name in given} if self.extras else {}
-        way = choose_way(kind, given)
         faults: dict[str, Any] = {}
+        way = self._way(kind, given, faults)
         numbers = read_parameters(kind, way, given, self, faults)
         extras = {}
         for name, entry in own.items():
@@ -59,6 +60,22 @@ class DeclaredField(StrictField):
             )
         return kind
 
+    def _way(self, kind: type[Declared], given: dict[str, Any], faults: dict[str, Any]) -> Parameterisation:
+        """Give the way that the parameters are given in: named by the kind's option, else the one that fits best."""
+        option = self.option_of(kind)
+        if option is None or option.name not in given:
+            return choose_way(kind, given)
+        try:
+            word = ChoiceField(option.meaning, tuple(option.ways)).read(given.pop(option.name))
+        except ValidationError as error:
+            faults[option.name] = error.messages
+            return kind.parameterisations[0]
+        return option.ways[word] or kind.parameterisations[0]
+
+    def option_of(self, kind: type[Declared]) -> Option | None:
+        """Give a word beside the parameters that says how they are to be read, if the kind has one."""
+        return getattr(kind, "option", None)
+
     def _extra(self, name: str) -> StrictField:
         field = self.extras[name]
         field.limits = self.limits
@@ -79,18 +96,34 @@ class DeclaredField(StrictField):
 
     def _print_kind(self, kind: type[Declared], components: dict[str, Any]) -> list[str]:
         every = [name for way in kind.parameterisations for name in way.parameters]
+        stem = class_name(kind.name) + self.component
         names = []
-        for position, way in enumerate(kind.parameterisations):
-            name = class_name(kind.name) + self.component + (f"By{way_name(way)}" if position else "")
-            shape: dict[str, Any] = {self.tag: {"type": "string", "const": kind.name}}
+        for name, way, word, may_be_left_out in self._branches(kind):
+            shape: dict[str, Any] = {self.tag: {"type": "string", "const": kind.name}} | word
             shape |= {n: parameter_schema(p, self.limits, self.arrays) for n, p in way.parameters.items()}
             shape |= {n: self._extra(n).printed(components) for n in self.extras}
-            optional = [n for n, p in way.parameters.items() if not p.required]
-            components[name] = closed_object(
-                shape, optional=[*optional, *self.extras], never=every, description=describe_kind(kind, way)
+            optional = [*may_be_left_out, *(n for n, p in way.parameters.items() if not p.required), *self.extras]
+            components[stem + name] = closed_object(
+                shape, optional=optional, never=every, description=describe_kind(kind, way)
             )
-            names.append(name)
+            names.append(stem + name)
         return names
+
+    def _branches(self, kind: type[Declared]) -> Iterator[tuple[str, Parameterisation, dict[str, Any], list[str]]]:
+        """Give each way to give the parameters: end of its name, the way, the option's word, what may be left out."""
+        option = self.option_of(kind)
+        if option is None:
+            for position, way in enumerate(kind.parameterisations):
+                yield f"By{way_name(way)}" if position else "", way, {}, []
+            return
+        for position, (word, named) in enumerate(option.ways.items()):
+            schema = {option.name: {"type": "string", "const": word, "description": option.meaning}}
+            yield (
+                (class_name(word) if position else ""),
+                named or kind.parameterisations[0],
+                schema,
+                ([] if position else [option.name]),
+            )
 
 
 def way_name(way: Parameterisation) -> str:

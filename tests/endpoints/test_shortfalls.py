@@ -196,6 +196,51 @@ def test_the_words_of_a_fault_say_what_to_do(ask: Asker) -> None:
     assert body["detail"] == "3 faults in the body; each is listed under errors."
 
 
+BENT = {"model": "cornish_fisher", "expected_return": 0.06, "volatility": 0.1, "skewness": -0.5, "excess_kurtosis": 2}
+
+
+def test_moments_of_bent_returns_are_parameters_or_matched(ask: Asker) -> None:
+    plain = ask.answer(PATH, {"portfolio": {"returns": BENT}, "threshold": 0})
+    same = ask.answer(PATH, {"portfolio": {"returns": BENT | {"moments": "parameters"}}, "threshold": 0})
+    assert plain | {"basis": 0} == same | {"basis": 0}
+    matched = ask.answer(PATH, {"portfolio": {"returns": BENT | {"moments": "matched"}}, "threshold": 0})
+    moments = matched["actual_moments"]
+    assert moments["standard_deviation"] == pytest.approx(0.1, rel=1e-9)
+    assert moments["skewness"] == pytest.approx(-0.5, rel=1e-9)
+    assert moments["excess_kurtosis"] == pytest.approx(2, rel=1e-9)
+    wrong = {"portfolio": {"returns": BENT | {"moments": "guessed"}}, "threshold": 0}
+    assert ask.faults(PATH, wrong) == {"/portfolio/returns/moments": "unknown_choice"}
+    # other models have no such word
+    other = {"portfolio": {"returns": BALANCED["returns"] | {"moments": "matched"}}, "threshold": 0}
+    assert ask.faults(PATH, other) == {"/portfolio/returns/moments": "unknown_field"}
+
+
+def test_every_return_model_answers_one_period_and_many(ask: Asker) -> None:
+    parts = [
+        {"weight": 0.9, "expected_return": 0.08, "volatility": 0.12},
+        {"weight": 0.1, "expected_return": -0.1, "volatility": 0.35},
+    ]
+    models: list[dict[str, Any]] = [
+        {"model": "normal", "expected_return": 0.06, "volatility": 0.1},
+        {"model": "lognormal", "expected_return": 0.06, "volatility": 0.1},
+        {"model": "student_t", "expected_return": 0.06, "volatility": 0.1, "degrees_of_freedom": 5},
+        BENT,
+        {"model": "normal_mixture", "components": parts},
+        {"model": "lognormal_mixture", "components": parts},
+        {"model": "up_down", "up_return": 0.1, "down_return": -0.05, "up_probability": 0.6, "moves": 2},
+        {"model": "empirical", "observations": [0.1, -0.05, 0.2, -0.1, 0.07]},
+    ]
+    listed = {entry["name"] for entry in ask.get("/v1/return-models").get_json()["return_models"]}
+    assert {returns["model"] for returns in models} == listed
+    for returns in models:
+        for years in (1, 3):
+            question = {"portfolio": {"returns": returns}, "threshold": 0.01, "horizon_years": years}
+            answer = ask.answer(PATH, question)
+            assert 0 < answer["shortfall_probability"] < 1
+            assert answer["basis"]["numerical_error"] <= 1e-9
+            assert answer["expected_gap"] > 0
+
+
 def test_a_batch_of_shortfalls(ask: Asker) -> None:
     questions = [{"portfolio": BALANCED, "threshold": floor} for floor in (0.0, 0.02)]
     batch = ask.answer(PATH, {"questions": questions})
