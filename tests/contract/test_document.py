@@ -112,8 +112,7 @@ def test_requests_are_closed_and_answers_open() -> None:
     for name, component in DOCUMENT["components"]["schemas"].items():
         if component.get("type") == "object":
             is_request = name in ("Assets", "Event") or name.startswith("Portfolio")
-            is_request |= name.endswith(("Question", "Batch", "Distribution", "Returns", "Columns"))
-            is_request |= "DistributionBy" in name or "ReturnsBy" in name
+            is_request |= bool(re.search("(Question|Batch|Distribution|Returns|Columns)($|By|Matched)", name))
             assert (component.get("additionalProperties") is False) == is_request, name
 
 
