@@ -7,9 +7,10 @@ import numpy as np
 
 from service.core.distributions.family import Moments
 from service.core.errors import DoesNotFit, Refusal
-from service.core.returns import Returns, law_of_horizon
+from service.core.returns import HorizonLaw, Returns, law_of_horizon
 from service.core.returns.horizon import placed
-from service.core.returns.laws.collected import CollectedLaw, Positions, side_by_side, stacked
+from service.core.returns.laws.collected import CollectedLaw, Part, Positions, side_by_side, stacked
+from service.core.returns.work import refuse_work
 
 
 @dataclass(frozen=True)
@@ -49,10 +50,15 @@ def collected(portfolios: Portfolios, horizon_years: float, parameter_uncertaint
     asked = portfolios.returns
     columns = isinstance(asked, Returns)
     groups = [(asked, np.arange(portfolios.count))] if isinstance(asked, Returns) else _grouped(asked)
-    parts, refusals = [], []
+    parts: list[Part] = []
+    refusals: list[Refusal] = []
+    work = 0.0
     for returns, positions in groups:
         try:
-            parts.append((law_of_horizon(returns, horizon_years, parameter_uncertainty), positions))
+            law = law_of_horizon(returns, horizon_years, parameter_uncertainty)
+            work += law.work
+            refuse_work(work)
+            parts += _parts(law, positions)
         except DoesNotFit as unfit:
             refusals += [
                 placed(refusal, ("portfolio_columns",)) if columns else _placed_in_rows(refusal, positions)
@@ -60,9 +66,16 @@ def collected(portfolios: Portfolios, horizon_years: float, parameter_uncertaint
             ]
     if refusals:
         raise DoesNotFit(refusals)
-    moments = [stacked(returns.model.moments()) for returns, _ in groups]
+    moments = [stacked(returns.moments()) for returns, _ in groups]
     joined = side_by_side(moments, [positions for _, positions in groups], portfolios.count)
     return Collection(CollectedLaw(parts, portfolios.count), Moments(*joined), tuple(groups))
+
+
+def _parts(law: HorizonLaw, positions: Positions) -> list[Part]:
+    """Give a law as a part of the whole, or the parts that it is made of itself."""
+    if isinstance(law, CollectedLaw):
+        return [(part, positions[at]) for part, at in law.parts]
+    return [(law, positions)]
 
 
 def _placed_in_rows(refusal: Refusal, positions: Positions) -> Refusal:
@@ -74,18 +87,19 @@ def _placed_in_rows(refusal: Refusal, positions: Positions) -> Refusal:
 
 
 def _grouped(rows: Sequence[Returns]) -> list[tuple[Returns, Positions]]:
-    """Gather the rows that can be stacked into arrays; a sample stands alone."""
+    """Gather the rows that can be stacked into arrays, and of the others, those that are equal."""
     places: dict[Hashable, list[int]] = {}
     for index, row in enumerate(rows):
         alike = (type(row.model), row.period, row.periods_per_year, row.compounding, row.sample_size is None)
-        places.setdefault(alike if row.model.stacks else index, []).append(index)
+        same = () if row.model.stacks else tuple(value.tobytes() for value in vars(row.model).values())
+        places.setdefault((alike, same), []).append(index)
     return [(_stacked([rows[i] for i in indices]), np.array(indices)) for indices in places.values()]
 
 
 def _stacked(rows: Sequence[Returns]) -> Returns:
-    """Give one Returns that holds the rows' parameters as arrays."""
+    """Give one Returns that holds the rows' parameters as arrays, or as they are where all rows have the same."""
     first = rows[0]
-    if len(rows) == 1:
+    if len(rows) == 1 or not first.model.stacks:
         return first
     columns = {name: np.array([getattr(row.model, name) for row in rows]) for name in vars(first.model)}
     sizes = None if first.sample_size is None else np.array([row.sample_size for row in rows], np.float64)

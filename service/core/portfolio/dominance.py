@@ -7,7 +7,7 @@ import numpy.typing as npt
 
 from service.core.arrays import NO_VALUE, Numbers, Truths
 from service.core.portfolio.question import Dominated
-from service.core.returns.law import Atoms
+from service.core.returns.law import Atoms, HorizonLaw
 from service.core.returns.laws.collected import CollectedLaw, Positions, stacked
 
 EXACT = "exact"
@@ -19,6 +19,8 @@ NOTICEABLE = 1e-12
 """A difference of figures below this may be their error."""
 LEAST_PROBABILITY = 1e-6
 GRID_POINTS = 121
+MOST_VALUES = 5_000
+"""Laws with more values are compared on the grid."""
 UNRELATED = -1
 
 Orders = npt.NDArray[np.int64]
@@ -64,18 +66,28 @@ class Comparison:
         self.kinds = np.full(law.count, UNRELATED)
         self.parameters = np.full((4, law.count), NO_VALUE)
         self.atoms: list[Atoms | None] = [None] * law.count
-        self.has_atoms = np.full(law.count, False)
+        self.jumps = np.full(law.count, False)
+        self.listed = np.full(law.count, False)
         names: dict[str, int] = {}
         for part, positions in law.parts:
             ordering = part.ordering()
             if ordering is None:
-                self.atoms[int(positions[0])] = part.atoms()
-                self.has_atoms[positions] = True
+                self._set_atoms(part, positions)
                 continue
             self.kinds[positions] = names.setdefault(ordering.kind, len(names))
             self.parameters[:, positions] = stacked(ordering[1:])
         alike = (self.kinds == self.kinds[0]) & (self.parameters[0] == self.parameters[0][0])
         self.grid = None if alike.all() and self.kinds[0] != UNRELATED else _grid(law)
+
+    def _set_atoms(self, part: HorizonLaw, positions: Positions) -> None:
+        """Keep the values of a discrete law where they are few enough to compare."""
+        self.jumps[positions] = part.discrete
+        atoms = part.atoms()
+        if atoms is None or atoms.values.size > MOST_VALUES:
+            return
+        self.listed[positions] = True
+        for position in positions:
+            self.atoms[int(position)] = atoms
 
     def orders(self, a: int, others: Positions) -> tuple[Orders, Truths]:
         """Give the order of a's dominance over each of the others, and whether it is exact."""
@@ -84,7 +96,7 @@ class Comparison:
         orders = np.where(same, _by_parameters(location, scale, level, a, others), 0)
         if self.grid is None:
             return orders, same
-        jumps = self.has_atoms[others] != self.has_atoms[a]
+        jumps = (self.jumps[others] | self.jumps[a]) & ~(self.listed[others] & self.listed[a])
         numerical = np.where(same, 0, _on_grid(self.grid, self.means, a, others, jumps))
         atoms, both_atoms = self.atoms[a], np.full(others.size, False)
         for i, other in enumerate(self.atoms[b] for b in others):
@@ -119,8 +131,8 @@ def _grid(law: CollectedLaw) -> _Grid:
 def _on_grid(grid: _Grid, means: Numbers, a: int, others: Positions, jumps: Truths) -> Orders:
     """Second order by the mean of the worst outcomes, which is the integral of the quantile function.
 
-    Where one of the two laws `jumps` and the other does not, first order must hold from each probability to the next,
-    so that no jump between them goes unseen.
+    Where one of the two laws `jumps`, and they are not compared value by value, first order must hold from each
+    probability to the next, so that no jump between them goes unseen.
     """
     quantiles = grid.quantiles[others]
     smooth = _above(grid.quantiles[a], quantiles)

@@ -65,7 +65,7 @@ def _ranking(portfolios: Portfolios, question: RankingQuestion, collection: Coll
         confidence_in_leader=confidence.joint,
         pairwise_confidence=confidence.pairs if few else None,
         confidence_reason=confidence.reason,
-        cautions=(*cautions, *confidence.cautions),
+        cautions=(*cautions, *(Caution(code, {}) for code in found.cautions), *confidence.cautions),
         summary=summary(
             Outcome(
                 question,

@@ -67,6 +67,8 @@ class Shortfall:
     method: str
     numerical_error: float
     numerical_error_kind: str
+    cautions: tuple[str, ...]
+    """Codes of what holds for the law of one portfolio at least."""
 
 
 def shortfall(
@@ -86,7 +88,7 @@ def shortfall(
     except DoesNotFit as unfit:
         raise DoesNotFit(placed(refusal, ("portfolio", "returns")) for refusal in unfit.refusals) from None
     with np.errstate(all="ignore"):
-        return figures(law, returns.model.moments(), floor, confidence_levels, quantile_probability, outcomes_count)
+        return figures(law, returns.moments(), floor, confidence_levels, quantile_probability, outcomes_count)
 
 
 def figures(
@@ -136,6 +138,7 @@ def figures(
         method=law.method,
         numerical_error=law.numerical_error,
         numerical_error_kind=law.numerical_error_kind,
+        cautions=law.cautions,
     )
 
 

@@ -5,6 +5,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from service.core.arrays import Numbers, number
+from service.core.distributions.family import Moments
 from service.core.errors import DoesNotFit, Refusal
 from service.core.parameters import Limit
 from service.core.returns.law import HorizonLaw
@@ -44,6 +45,10 @@ class Returns:
         """Periods a year: the given number, or the period's own."""
         return PERIODS_PER_YEAR[self.period] if self.periods_per_year is None else self.periods_per_year
 
+    def moments(self) -> Moments:
+        """Give the moments of the modelled return of one period."""
+        return self.model.moments_under(self.compounding)
+
     def periods(self, horizon_years: float) -> Numbers:
         """Give the number of periods in the horizon, the whole number where it is one within 1e-9."""
         exact = horizon_years * self.periods_in_year
@@ -63,27 +68,21 @@ def law_of_horizon(returns: Returns, horizon_years: float, parameter_uncertainty
             sample_size = _sample_size(returns, periods)
             return returns.model.predictive_law(periods, returns.compounding, sample_size)
         if returns.compounding not in returns.model.divides:
-            _one_period(returns, horizon_years, periods)
+            _refuse_part(returns, horizon_years, periods)
         return returns.model.horizon_law(periods, returns.compounding)
 
 
-def _one_period(returns: Returns, horizon_years: float, periods: Numbers) -> None:
-    """Refuse what this model does not answer: part of a period, or several."""
-    if periods == 1:
+def _refuse_part(returns: Returns, horizon_years: float, periods: Numbers) -> None:
+    """Refuse part of a period, for a law that does not divide."""
+    if periods > 0 and periods == np.rint(periods):
         return
     params = {"model": returns.model.name, "periods": float(periods), "period": returns.period}
-    if periods != np.rint(periods) or periods == 0:
-        detail = (
-            f"horizon_years {horizon_years:.15g} is {float(periods):.15g} periods, and the law of {returns.model.name} "
-            "returns does not divide. Give a horizon of whole periods, a shorter period with returns estimated for it, "
-            "or a law that divides: lognormal, or normal with continuous compounding."
-        )
-        raise DoesNotFit([Refusal(("horizon_years",), "horizon_not_divisible", detail, params)])
     detail = (
-        f"The law of {float(periods):.15g} periods of {returns.model.name} returns is not available yet; ask for one "
-        "period, or give a law for which it is: lognormal, or normal with continuous compounding."
+        f"horizon_years {horizon_years:.15g} is {float(periods):.15g} periods, and the law of {returns.model.name} "
+        "returns does not divide. Give a horizon of whole periods, a shorter period with returns estimated for it, "
+        "or a law that divides: lognormal, or normal with continuous compounding."
     )
-    raise DoesNotFit([Refusal(("horizon_years",), "horizon_not_available", detail, params)])
+    raise DoesNotFit([Refusal(("horizon_years",), "horizon_not_divisible", detail, params)])
 
 
 def _sample_size(returns: Returns, periods: Numbers) -> Numbers:

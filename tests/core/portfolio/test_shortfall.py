@@ -187,7 +187,7 @@ def test_refusals_say_where_the_returns_stand() -> None:
         figures(normal(0.05, 0.1), parameter_uncertainty="predictive")
     assert raised.value.refusals[0].path == ("portfolio", "returns", "sample_size")
     with pytest.raises(DoesNotFit) as raised:
-        figures(normal(0.05, 0.1), horizon_years=3)
+        figures(normal(0.05, 0.1), horizon_years=2.5)
     assert raised.value.refusals[0].path == ("horizon_years",)
 
 

@@ -33,13 +33,6 @@ def test_every_model_answers_one_period(given: dict[str, Any], period: str, year
     assert float(found.mean()) == pytest.approx(0.15 if given is OBSERVED else 0.05)
 
 
-@pytest.mark.parametrize("given", [NORMAL, OBSERVED, STUDENT, STUDENT | {"compounding": "continuous"}])
-def test_several_periods_are_refused_for_now(given: dict[str, Any]) -> None:
-    found = refusal(**given, horizon_years=3)
-    assert (found.path, found.code) == (("horizon_years",), "horizon_not_available")
-    assert found.params["periods"] == 3
-
-
 @pytest.mark.parametrize("years", [0.5, 1.5, 1e-12])
 @pytest.mark.parametrize("given", [NORMAL, OBSERVED, STUDENT])
 def test_part_of_a_period_is_refused_with_what_to_send_instead(given: dict[str, Any], years: float) -> None:
@@ -92,7 +85,7 @@ def test_a_sample_size_may_be_a_plain_whole_number() -> None:
 def test_a_refusal_about_the_returns_is_led_to_where_they_stand() -> None:
     about_returns = Refusal(("returns", "sample_size"), "required", "", {})
     assert placed(about_returns, ("portfolios", 3, "returns")).path == ("portfolios", 3, "returns", "sample_size")
-    about_question = Refusal(("horizon_years",), "horizon_not_available", "", {})
+    about_question = Refusal(("horizon_years",), "horizon_not_divisible", "", {})
     assert placed(about_question, ("portfolios", 3, "returns")) is about_question
 
 

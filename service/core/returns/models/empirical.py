@@ -8,6 +8,8 @@ from service.core.arrays import Numbers
 from service.core.distributions.family import Moments
 from service.core.errors import Refusal
 from service.core.parameters import Limit, Sample
+from service.core.returns.compounding.compound import refuse_periods
+from service.core.returns.compounding.values import law_of_values
 from service.core.returns.law import HorizonLaw
 from service.core.returns.laws.sample import SampleLaw, sample_moments
 from service.core.returns.model import LARGEST, ReturnModel
@@ -37,5 +39,10 @@ class Empirical(ReturnModel):
     def moments(self) -> Moments:
         return sample_moments(self.observations)
 
-    def horizon_law(self, periods: Numbers, compounding: str) -> HorizonLaw:  # noqa: ARG002 - one period alone
-        return SampleLaw(np.expm1(self.observations) if compounding == "continuous" else self.observations)
+    def horizon_law(self, periods: Numbers, compounding: str) -> HorizonLaw:
+        seen = self.observations
+        if periods == 1:
+            return SampleLaw(np.expm1(seen) if compounding == "continuous" else seen)
+        refuse_periods(int(periods))
+        logs = seen if compounding == "continuous" else np.log1p(seen)
+        return law_of_values(logs, np.full(logs.size, 1 / logs.size), int(periods))

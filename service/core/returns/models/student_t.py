@@ -1,10 +1,19 @@
 """Returns with Student's t, or log returns with it."""
 
+from functools import partial
+
 import numpy as np
 
-from service.core.arrays import INFINITY, NO_VALUE, Numbers
+from service.core.arrays import INFINITY, NO_VALUE, Numbers, number
 from service.core.distributions.family import Moments
 from service.core.parameters import Parameter
+from service.core.returns.compounding.bessel_law import BesselLaw
+from service.core.returns.compounding.compound import compounded
+from service.core.returns.compounding.growth import floored
+from service.core.returns.compounding.listed import certain
+from service.core.returns.compounding.nodes_student_t import StudentTPart
+from service.core.returns.compounding.step import Step
+from service.core.returns.distinct import law_of_each
 from service.core.returns.law import HorizonLaw
 from service.core.returns.laws.exponential_t import ExponentialTLaw
 from service.core.returns.laws.student_t import StudentTLaw, scale_of_t
@@ -30,7 +39,21 @@ class StudentT(ReturnModel):
         heavy = np.where(v > 4, 6 / np.where(v > 4, v - 4, 1), INFINITY)
         return Moments(mean, deviation, skewness, np.where(spread, heavy, NO_VALUE))
 
-    def horizon_law(self, periods: Numbers, compounding: str) -> HorizonLaw:  # noqa: ARG002 - one period alone
+    def horizon_law(self, periods: Numbers, compounding: str) -> HorizonLaw:
+        if periods != 1:
+            return law_of_each(self, partial(_compounded, periods=int(periods), compounding=compounding))
         v = self.degrees_of_freedom
         law = ExponentialTLaw if compounding == "continuous" else StudentTLaw
         return law(v, self.expected_return, scale_of_t(v, self.volatility), self.volatility)
+
+
+def _compounded(one: StudentT, periods: int, compounding: str) -> HorizonLaw:
+    mean, deviation, v = one.expected_return, one.volatility, one.degrees_of_freedom
+    scale = scale_of_t(v, deviation)
+    if compounding == "continuous":
+        return certain(mean, number(periods)) if scale == 0 else BesselLaw(v, mean, scale, deviation, periods)
+    if scale == 0:
+        return certain(np.log1p(mean), number(periods))
+    part = StudentTPart(v, mean, scale)
+    laws = (StudentTLaw(v, centre, scale, deviation) for centre in (mean, -mean))
+    return compounded(Step((part,), floored(*laws)), periods)
