@@ -56,6 +56,19 @@ def test_the_first_answer_is_as_shown(ask: Asker) -> None:
     assert_shown(ask.answer(address, json.loads(body)), shown)
 
 
+def test_every_summary_is_quoted(ask: Asker) -> None:
+    words = " ".join(README.split())
+    for address, body in CALLS:
+        if address == "/v1/rankings":
+            assert ask.answer(address, json.loads(body))["summary"] in words
+
+
+def test_the_mix_is_as_told(ask: Asker) -> None:
+    body = next(body for address, body in CALLS if address == "/v1/allocations")
+    weights = [round(100 * row["weight"]) for row in ask.answer("/v1/allocations", json.loads(body))["weights"]]
+    assert "About {} % bonds, {} % shares, {} % property.".format(*weights) in README
+
+
 def test_the_problem_is_as_shown(ask: Asker) -> None:
     shown = json.loads(re.findall(r"```json\n(.*?)\n```", README, re.DOTALL)[1])
     returns = {"model": "normal", "expected_retrun": 0.05, "volatility": -0.08}
