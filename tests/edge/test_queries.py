@@ -1,5 +1,7 @@
 """GET: the body flattened into a query."""
 
+import json
+
 import pytest
 
 from tests.conftest import Asker, RunningService
@@ -70,6 +72,19 @@ def test_a_broken_query_is_400(running: RunningService, query: str) -> None:
     answer = running.send(f"GET {PATH}?{query} HTTP/1.1\r\nHost: localhost\r\n\r\n".encode())
     assert answer.status == 400
     assert answer.headers["content-type"] == "application/problem+json"
+
+
+@pytest.mark.parametrize(
+    ("query", "code"),
+    [(f"{LAW}&below=11&below=12", "given_twice"), (f"{LAW}&below=11&colour=red", "unknown_field")],
+)
+def test_a_parameter_given_twice_or_unknown_is_422_over_a_socket(
+    running: RunningService, query: str, code: str
+) -> None:
+    answer = running.send(f"GET {PATH}?{query} HTTP/1.1\r\nHost: localhost\r\n\r\n".encode())
+    assert answer.status == 422
+    assert answer.headers["content-type"] == "application/problem+json"
+    assert [fault["code"] for fault in json.loads(answer.body)["errors"]] == [code]
 
 
 def test_post_takes_no_query(ask: Asker) -> None:
