@@ -17,7 +17,9 @@ from service.schemas.fields import ChoiceField, NumberField, StrictField, TextFi
 
 LONGEST_NAME = 200
 NAME = TextField("a name of the caller's choice, echoed unchanged; it need not be unique", LONGEST_NAME)
-PERIODS_A_YEAR = Parameter("periods in a year, in place of the period's usual number", above=0, example=252)
+PERIODS_A_YEAR = Parameter(
+    "periods in a year, in place of the period's usual number", at_least=0.01, at_most=100_000, example=252
+)
 SAMPLE_SIZE = Parameter("periods behind the estimates", at_least=2, whole=True, example=120)
 WORDS: dict[str, StrictField] = {
     "period": ChoiceField("the period whose return is modelled; year is the default", tuple(PERIODS_PER_YEAR)),
