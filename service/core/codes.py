@@ -92,10 +92,15 @@ CAUTIONS = {
     "final.",
     "discrete_law_approximated": "There are too many possible outcomes to list; their law is taken as smooth, with the "
     "error stated.",
+    "class_is_not_a_limit": "The class describes past ups and downs; a low class is neither free of risk nor a limit on losses.",
+    "as_understood_here": "Computed by the published formula as understood here; whoever publishes the figure answers for it.",
+    "short_history": "The history is short for such figures.",
+    "formula_outside_its_range": "The formula is used outside the range that it is made for.",
     "looks_like_percent": "A figure was perhaps meant in per cent: 5 for 0.05.",
 }
 
 NULL_REASONS = {
+    "other_standard": "The figure belongs to another standard.",
     "none_admissible": "No portfolio is admissible, so none leads.",
     "needs_shade": "The figure needs shade: the event to shade.",
     "no_rank": "The portfolio is not admissible, or the criterion has no value for it.",
@@ -114,6 +119,7 @@ METHODS = {
     "quadrature": "Numerical integration with a known error.",
     "closed_form_and_quadrature": "Probabilities and quantiles from a formula, averages by numerical integration.",
     "active_set_on_frontier": "An active-set walk along the efficient frontier; figures of the mix from a formula.",
+    "regulation_formula": "The formula of a regulation.",
     "counting": "Observations counted; probabilities are exact fractions.",
     "enumeration": "All possible outcomes listed, each with its exact probability.",
     "exact_sum": "A sum over the components that may rule, each term from a formula.",

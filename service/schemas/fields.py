@@ -175,6 +175,19 @@ class TextField(StrictField):
         return {"type": "string", "maxLength": self.most, "description": self.meaning}
 
 
+class SeriesField(StrictField):
+    """An observed series, which does not set the length of the question."""
+
+    def read(self, value: Any) -> Given:
+        if type(value) is not list:
+            raise refuse("not_an_array", "A JSON array of numbers is needed.")
+        series = read_array(value, self.limits.entries)
+        return Given({}, lambda: series)
+
+    def printed(self, components: dict[str, Any]) -> dict[str, Any]:  # noqa: ARG002
+        return number_list(self.limits) | {"description": self.meaning}
+
+
 class MatrixField(StrictField):
     """A square matrix of numbers, row by row."""
 

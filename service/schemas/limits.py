@@ -9,8 +9,8 @@ class Limits:
 
     entries: int = 100_000
     """Numbers in one array."""
-    assets: int = 200
-    """Assets that portfolios share."""
+    rows: int = 200
+    """Rows of a short list: assets, weights, cash flows, legs of a glide path."""
     components: int = 100
     """Components of a mixture."""
     questions: int = 1_000

@@ -39,19 +39,19 @@ def read_members(
 
 
 def read_rows(
-    value: Any, inner: Mapping[str, StrictField], needed: Iterable[str], limits: Limits
+    value: Any, inner: Mapping[str, StrictField], needed: Iterable[str], limits: Limits, *, least: int = 1
 ) -> list[dict[str, Any]]:
     """Read a list of objects that each need some of their members. Raises ValidationError."""
     if type(value) is not list:
         raise refuse("not_an_array", "A JSON array of objects is needed.")
-    if not value:
+    if len(value) < least:
         raise refuse("empty", "A list needs an entry.")
-    if len(value) > limits.assets:
+    if len(value) > limits.rows:
         raise refuse(
             "too_many",
-            f"At most {limits.assets} entries; these are {len(value)}.",
+            f"At most {limits.rows} entries; these are {len(value)}.",
             given=len(value),
-            limit=limits.assets,
+            limit=limits.rows,
         )
     rows: list[dict[str, Any]] = []
     faults: dict[int, Any] = {}

@@ -66,7 +66,7 @@ class WeightsField(StrictField):
             "type": "array",
             "items": closed_object(members),
             "minItems": 1,
-            "maxItems": self.limits.assets,
+            "maxItems": self.limits.rows,
             "description": "weights over the shared assets, adding up to 1",
         }
 

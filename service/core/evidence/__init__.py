@@ -1,0 +1,1 @@
+"""From data, and back to data: observed series, risk classes."""
