@@ -60,6 +60,9 @@ FAULTS = {
     "probability_not_below_half": "The method is for probabilities below one half.",
     "model_not_available": "The method is not available for this return model.",
     "not_a_correlation_matrix": "Correlations must be symmetric, 1 on the diagonal, and without a negative eigenvalue.",
+    "periods_do_not_fit": "A time of the plan is no whole number of the periods of its returns, whose law does not "
+    "divide.",
+    "no_such_flow": "The flow that is sought never comes before the horizon.",
     "no_event": "An event needs a bound.",
     "bounds_do_not_go_together": "These bounds cannot describe one event.",
     "bounds_crossed": "The lower bound lies above the upper one.",
@@ -96,6 +99,18 @@ CAUTIONS = {
     "as_understood_here": "Computed by the published formula as understood here; whoever publishes the figure answers for it.",
     "short_history": "The history is short for such figures.",
     "formula_outside_its_range": "The formula is used outside the range that it is made for.",
+    "mean_above_typical": "A few very good outcomes lift this average; more than half of all outcomes lie below it.",
+    "bands_are_not_paths": "The lines join separate years; no single course of the money follows one of them.",
+    "success_hides_size": "Missing the goal by a little and by everything count alike here; see the average gap and the "
+    "chance of running out.",
+    "same_spending_whatever_happens": "The plan is assumed to go on spending the same in bad years; people usually "
+    "change course earlier.",
+    "steady_inflation": "Prices are assumed to rise evenly; higher or uneven inflation lowers every figure in today's "
+    "money.",
+    "life_beyond_horizon": "The person may well live beyond the last year calculated; running out after it is not in "
+    "this figure.",
+    "success_jumps": "The chance of success jumps at this value; just beside it, it is on the other side of the wanted "
+    "one.",
     "looks_like_percent": "A figure was perhaps meant in per cent: 5 for 0.05.",
 }
 
@@ -108,6 +123,8 @@ NULL_REASONS = {
     "not_computed": "The figure is not computed for so many portfolios, or not asked for.",
     "positive_infinity": "The figure is plus infinity.",
     "negative_infinity": "The figure is minus infinity.",
+    "beyond_horizon": "The probability is not reached by the horizon.",
+    "needs_lifetime": "The figure needs lifetime or lives.",
     "no_value": "The figure has no value for this question.",
 }
 
@@ -125,6 +142,11 @@ METHODS = {
     "exact_sum": "A sum over the components that may rule, each term from a formula.",
     "two_halves": "The outcomes of each half of the periods listed, and every pair of them counted by sorted search.",
     "fourier_inversion": "The characteristic function inverted numerically; two grids show the error.",
+    "lognormal_mixture_quadrature": "Wealth between cash flows as a mixture of lognormal laws, by the trapezoidal rule; "
+    "a coarser second run shows the error.",
+    "lattice_fourier": "Wealth between cash flows on an even grid, growth by Fourier transform; a coarser second run "
+    "shows the error.",
+    "bracketed_root_of_outlook": "A bracketed search on the chance of success, each trial computed in full.",
     "several_methods": "The portfolios' laws are computed by different methods.",
     "batch": "Each answer of the batch names its own method.",
 }

@@ -1,0 +1,63 @@
+"""Growth whose logarithm is normal: between cash flows only its mean and variance matter."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from service.core.arrays import Numbers, Truths
+from service.core.goals.points import Points, Spread
+
+CERTAIN = 1e-8
+"""A deviation of the log growth over a step that is taken as none."""
+NEGLIGIBLE = 1e-17
+
+
+@dataclass(frozen=True)
+class NormalGrowth:
+    """Log growth between each date and the next: independent N(means[i], variances[i])."""
+
+    means: Numbers
+    variances: Numbers
+
+    @property
+    def random(self) -> Truths:
+        """Whether growth from each date to the next is uncertain."""
+        return self.variances > CERTAIN**2
+
+    @property
+    def certain(self) -> Numbers:
+        """Log growth where it is certain."""
+        return self.means
+
+    @property
+    def log_factors(self) -> Numbers:
+        """Logarithm of E[G]."""
+        return self.means + self.variances / 2
+
+    @property
+    def survival(self) -> Numbers:
+        """P(G > 0) of each."""
+        return np.ones(self.means.size)
+
+    def spread(self, points: Points, shift: float, start: int, end: int) -> Spread:
+        """Give the law of wealth at date `end`, before its flow, from the points after the flow at `start`."""
+        between = slice(start, end)
+        return Spread(points, shift + float(self.means[between].sum()), self.deviation(start, end))
+
+    def deviation(self, start: int, end: int) -> float:
+        """Give the deviation of log growth between two dates."""
+        return float(np.sqrt(self.variances[start:end].sum()))
+
+    def spacing(self, spread: Spread, start: int, end: int, ratio: float) -> float:
+        """Distance of the points after the flow at `start`: `ratio` of them a deviation, before it and until `end`."""
+        wanted = min(spread.deviation, self.deviation(start, end)) / ratio
+        known = spread.points.spacing
+        return known if abs(wanted / known - 1) < 1e-9 else wanted
+
+    def trimmed(self, points: Points) -> Points:
+        """Leave out the ends whose mass is lost in rounding."""
+        kept = np.flatnonzero(points.masses > NEGLIGIBLE)
+        if kept.size == 0:
+            return Points(points.spacing, points.first, np.zeros(0), points.rest)
+        first, end = int(kept[0]), int(kept[-1]) + 1
+        return Points(points.spacing, points.first + first, points.masses[first:end], points.rest)

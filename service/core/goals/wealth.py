@@ -1,0 +1,183 @@
+"""The law of wealth at one date: what an outlook reads from it."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from scipy.special import ndtr, ndtri
+
+from service.core.arrays import Numbers
+from service.core.goals.points import Spread, at_least, shortfall
+
+PAID = 1e-9
+"""A withdrawal is paid in full if at most this share of it is missing."""
+NEAR = 7.5
+"""Nodes farther than so many deviations count as wholly below or above."""
+UNNOTICED = 1e-11
+"""A quantile this close to the probability of nothing being left is 0."""
+COINCIDENCE = 1e-12
+"""Cumulative probabilities of single outcomes this close to a level are equal to it."""
+ROUNDS = 60
+LARGEST_LOG = 709.0
+"""exp of more leaves the doubles."""
+
+
+@dataclass(frozen=True, slots=True)
+class Payment:
+    """What is paid in and out while growth is certain: wealth W becomes (W + amount) e^log_growth if W >= threshold.
+
+    Below the threshold (0: it cannot happen) some withdrawal is not paid in full and the plan is depleted. `owed` is
+    that withdrawal.
+    """
+
+    threshold: float = 0.0
+    amount: float = 0.0
+    log_growth: float = 0.0
+
+    def then(self, flow: float) -> "Payment":
+        """Add a flow, after the certain growth so far."""
+        amount = self.amount + flow * float(np.exp(-self.log_growth))
+        threshold = max(self.threshold, -amount) if flow < 0 else self.threshold
+        return Payment(threshold, amount, self.log_growth)
+
+    def grown(self, log_growth: float) -> "Payment":
+        """Let what is there grow."""
+        return Payment(self.threshold, self.amount, self.log_growth + log_growth)
+
+    def before(self, wealth: float) -> float:
+        """Give what there must have been before, for so much after; may be below zero."""
+        return wealth * float(np.exp(-self.log_growth)) - self.amount
+
+    def after(self, wealth: Numbers) -> Numbers:
+        """Give what there is after, 0 where something could not be paid."""
+        paid = wealth >= self.threshold
+        return np.where(paid, np.maximum(wealth + self.amount, 0.0) * np.exp(self.log_growth), 0.0)
+
+
+NOTHING = Payment()
+
+
+class Wealth:
+    """The law of wealth V at a date; V = 0 with what is depleted."""
+
+    def solvent_at_least(self, level: float) -> float:
+        """P(not depleted and V >= level)."""
+        raise NotImplementedError
+
+    def gap(self, level: float) -> float:
+        """E[max(level - V, 0)]."""
+        raise NotImplementedError
+
+    def quantiles(self, probabilities: Numbers) -> Numbers:
+        """Give the lower quantiles of V."""
+        raise NotImplementedError
+
+
+@dataclass(frozen=True)
+class ListedWealth(Wealth):
+    """Every value V can take, not depleted, with its probability."""
+
+    values: Numbers
+    masses: Numbers
+
+    def solvent_at_least(self, level: float) -> float:
+        """P(not depleted and V >= level)."""
+        reached = self.values >= level - COINCIDENCE * abs(level)
+        return float(self.masses[reached].sum())
+
+    def gap(self, level: float) -> float:
+        """E[max(level - V, 0)]."""
+        depleted = 1 - float(self.masses.sum())
+        return float(self.masses @ np.maximum(level - self.values, 0.0)) + level * max(depleted, 0.0)
+
+    def quantiles(self, probabilities: Numbers) -> Numbers:
+        """Give the lower quantiles of V."""
+        order = np.argsort(self.values, kind="stable")
+        values = np.concatenate([[0.0], self.values[order]])
+        cumulative = 1 - np.append(np.cumsum(self.masses[order][::-1])[::-1], 0.0)
+        return values[np.minimum(np.searchsorted(cumulative, probabilities - COINCIDENCE), values.size - 1)]
+
+
+@dataclass(frozen=True)
+class MixedWealth(Wealth):
+    """Lognormal laws around `centres` (rising logarithms) with these masses, and what was paid since.
+
+    `alive`: P(not depleted) before the payment. It may exceed the sum of the masses, where hardly anything is left.
+    """
+
+    centres: Numbers
+    masses: Numbers
+    deviation: float
+    alive: float
+    payment: Payment = NOTHING
+
+    @classmethod
+    def of(cls, spread: Spread, alive: float, payment: Payment) -> "MixedWealth":
+        """Read the law off a mixture."""
+        return cls(spread.log_centres(), spread.points.masses, spread.deviation, alive, payment)
+
+    @classmethod
+    def blend(cls, shares: Sequence[float], laws: Sequence["MixedWealth"]) -> "MixedWealth":
+        """Mix laws of one deviation and one payment."""
+        centres = np.concatenate([law.centres for law in laws])
+        masses = np.concatenate([share * law.masses for share, law in zip(shares, laws, strict=True)])
+        alive = sum(share * law.alive for share, law in zip(shares, laws, strict=True))
+        order = np.argsort(centres, kind="stable")
+        return cls(centres[order], masses[order], laws[0].deviation, alive, laws[0].payment)
+
+    def solvent_at_least(self, level: float) -> float:
+        """P(not depleted and V >= level)."""
+        needed = max(self.payment.before(level), self.payment.threshold)
+        if needed <= 0:
+            return self.alive
+        return min(max(at_least(self.centres, self.masses, self.deviation, needed), 0.0), self.alive)
+
+    def gap(self, level: float) -> float:
+        """E[max(level - V, 0)]."""
+        threshold, needed = self.payment.threshold, self.payment.before(level)
+        below = level * (1 - self.solvent_at_least(0.0))
+        if needed <= threshold:
+            return below
+        gap = shortfall(self.centres, self.masses, self.deviation, needed) + needed * self._missing
+        if threshold > 0:
+            unpaid = float(self.masses.sum()) - at_least(self.centres, self.masses, self.deviation, threshold)
+            gap -= shortfall(self.centres, self.masses, self.deviation, threshold) + (needed - threshold) * unpaid
+            gap -= needed * self._missing
+        return gap * float(np.exp(self.payment.log_growth)) + below
+
+    @property
+    def _missing(self) -> float:
+        """Mass that is alive with next to nothing."""
+        return max(self.alive - float(self.masses.sum()), 0.0)
+
+    def quantiles(self, probabilities: Numbers) -> Numbers:
+        """Give the lower quantiles of V."""
+        total = float(self.masses.sum())
+        beyond_nothing = probabilities - (1 - total)
+        before = np.zeros(probabilities.size)
+        if total > 0:
+            cumulative = np.concatenate([[0.0], np.cumsum(self.masses)])
+            for index in np.flatnonzero(beyond_nothing > UNNOTICED):
+                before[index] = self._quantile(float(beyond_nothing[index]), cumulative)
+        return self.payment.after(before)
+
+    def _quantile(self, mass: float, cumulative: Numbers) -> float:
+        """exp(y) with so much mass below: Newton on the mixture's distribution function, bracketed."""
+        centres, s = self.centres, self.deviation
+        middles = (cumulative[1:] + cumulative[:-1]) / 2
+        y = float(np.interp(mass, middles, centres))
+        if centres.size == 1:
+            y += s * float(ndtri(min(mass / cumulative[-1], 1.0)))
+        low, high = float(centres[0]) - 40 * s, float(centres[-1]) + 40 * s
+        for _ in range(ROUNDS):
+            left, right = np.searchsorted(centres, (y - NEAR * s, y + NEAR * s))
+            d = (y - centres[left:right]) / s
+            excess = cumulative[left] + float(self.masses[left:right] @ ndtr(d)) - mass
+            density = float(self.masses[left:right] @ np.exp(-d * d / 2)) / (s * np.sqrt(2 * np.pi))
+            low, high = (low, y) if excess > 0 else (y, high)
+            newton = y - excess / density if density > 1e-200 else np.inf
+            new = newton if low < newton < high else (low + high) / 2
+            moved, y = abs(new - y), new
+            if moved < 1e-11:
+                break
+        return float(np.exp(min(y, LARGEST_LOG)))
