@@ -32,6 +32,9 @@ class Growth(Protocol):
     def spread(self, points: Points, shift: float, start: int, end: int) -> Spread:
         """Give the law of wealth at date `end`, before its flow, from points after the flow at `start`."""
 
+    def drift(self, start: int, end: int) -> float:
+        """Give the centre of the log growth between two dates."""
+
     def deviation(self, start: int, end: int) -> float:
         """Give how far, in log wealth, growth between two dates spreads: beyond 8 of it next to nothing lies."""
 

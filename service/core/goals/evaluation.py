@@ -10,6 +10,7 @@ from service.core.goals.plan import Plan
 from service.core.goals.quadrature import Quadrature
 from service.core.goals.recursion import Recursion
 from service.core.goals.timeline import Timeline, timeline
+from service.core.goals.wealth import Wealth
 from service.core.goals.work import Work
 
 RATIO = 1.5
@@ -62,3 +63,16 @@ def run(
     least = min((target for target in plan.targets if target > 0), default=None)
     recursion = Recursion(dates.flows, growth, reported, Quadrature(work), least, averages, ratio)
     return recursion.run(plan.initial_value or 0.0)
+
+
+def final_wealth(plan: Plan, work: Work) -> Wealth:
+    """Give the law of wealth at the horizon, by one run."""
+    dates = timeline(plan)
+    last = dates.dates.size - 1
+    growth = growth_of(plan, dates)
+    return run(plan, dates, growth, frozenset([last]), work, averages=False).wealth[last]
+
+
+def chance(plan: Plan, solvency: bool, work: Work) -> float:
+    """Give the probability of success at the first target, or of paying every withdrawal, by one run."""
+    return final_wealth(plan, work).solvent_at_least(0.0 if solvency else plan.targets[0])

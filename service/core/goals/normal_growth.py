@@ -41,8 +41,11 @@ class NormalGrowth:
 
     def spread(self, points: Points, shift: float, start: int, end: int) -> Spread:
         """Give the law of wealth at date `end`, before its flow, from the points after the flow at `start`."""
-        between = slice(start, end)
-        return Spread(points, shift + float(self.means[between].sum()), self.deviation(start, end))
+        return Spread(points, shift + self.drift(start, end), self.deviation(start, end))
+
+    def drift(self, start: int, end: int) -> float:
+        """Give the mean of log growth between two dates."""
+        return float(self.means[start:end].sum())
 
     def deviation(self, start: int, end: int) -> float:
         """Give the deviation of log growth between two dates."""

@@ -1,6 +1,6 @@
 """A plan: what is there, what comes in and goes out, how it grows, and what it shall reach."""
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterator
 from dataclasses import dataclass
 from itertools import pairwise
 
@@ -110,14 +110,14 @@ class Plan:
             found = refusals_of_limits(("target", target, Limit("at_least", 0)))
             yield from (Refusal(self.target_path(index), one.code, one.detail, one.params) for one in found)
         if self.horizon_years is not None:
-            steps = self.horizon_years * max(self._densities())
+            steps = self.horizon_years * self.steps_a_year()
             if steps > MOST_STEPS:
                 detail = f"The horizon has {steps:.0f} steps; at most {MOST_STEPS} are computed. Use longer periods."
                 yield Refusal(("horizon_years",), "too_much_work", detail, {"work": steps, "limit": MOST_STEPS})
 
-    def _densities(self) -> Iterable[float]:
-        """Steps a year of everything that has a period."""
-        return [*(leg.returns.periods_in_year for leg in self.legs), *(f.times_a_year for f in self.cash_flows)]
+    def steps_a_year(self) -> float:
+        """Give the steps a year, by the shortest period among flows and returns."""
+        return max(*(leg.returns.periods_in_year for leg in self.legs), *(f.times_a_year for f in self.cash_flows), 0.0)
 
     def _glide_path(self) -> Iterator[Refusal]:
         if not self.glides:

@@ -195,9 +195,10 @@ class Recursion:
             return BEFORE_INFLOW
         shown = any(date < other <= following for other in self.reported)
         bounds = [SHOWN_AT_END if following == self.last else SHOWN] if shown else []
-        needed = -flow if flow < 0 else self.least_target
-        if needed is not None:
+        needed = [-flow] if flow < 0 else []
+        needed += [self.least_target] if shown and self.least_target else []
+        if needed:
             reach = REACH * self.growth.deviation(date, following)
-            grown = self.growth.spread(Points(1.0, 0, np.ones(1)), shift, date, following).shift
-            bounds.append(float(np.log(needed)) - grown - reach)
-        return max(min(bounds, default=SHOWN), LEAST_LOG)
+            drift = float(self.growth.drift(date, following))
+            bounds.append(float(np.log(min(needed))) - shift - drift - reach)
+        return max(min(bounds), LEAST_LOG)

@@ -1,7 +1,7 @@
 """The law of wealth at one date: what an outlook reads from it."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from scipy.special import ndtr, ndtri
@@ -72,6 +72,14 @@ class Wealth:
         """Give the lower quantiles of V."""
         raise NotImplementedError
 
+    def greatest_reached(self, probability: float) -> float:
+        """Give the greatest level with P(not depleted and V >= level) >= probability."""
+        return float(self.quantiles(np.array([1 - probability]))[0])
+
+    def paying(self, flow: float) -> "Wealth":
+        """Give the law of wealth after one more flow."""
+        raise NotImplementedError
+
 
 @dataclass(frozen=True)
 class ListedWealth(Wealth):
@@ -96,6 +104,18 @@ class ListedWealth(Wealth):
         values = np.concatenate([[0.0], self.values[order]])
         cumulative = 1 - np.append(np.cumsum(self.masses[order][::-1])[::-1], 0.0)
         return values[np.minimum(np.searchsorted(cumulative, probabilities - COINCIDENCE), values.size - 1)]
+
+    def greatest_reached(self, probability: float) -> float:
+        """Give the greatest value that is reached so often, 0 if none is."""
+        order = np.argsort(-self.values, kind="stable")
+        enough = np.cumsum(self.masses[order]) >= probability - COINCIDENCE
+        return float(self.values[order][np.argmax(enough)]) if enough.any() else 0.0
+
+    def paying(self, flow: float) -> "ListedWealth":
+        """Give the law of wealth after one more flow."""
+        after = self.values + flow
+        paid = (after >= PAID * flow) | (flow >= 0)
+        return ListedWealth(np.maximum(after[paid], 0.0), self.masses[paid])
 
 
 @dataclass(frozen=True)
@@ -144,6 +164,10 @@ class MixedWealth(Wealth):
             gap -= shortfall(self.centres, self.masses, self.deviation, threshold) + (needed - threshold) * unpaid
             gap -= needed * self._missing
         return gap * float(np.exp(self.payment.log_growth)) + below
+
+    def paying(self, flow: float) -> "MixedWealth":
+        """Give the law of wealth after one more flow."""
+        return replace(self, payment=self.payment.then(flow))
 
     @property
     def _missing(self) -> float:
