@@ -4,11 +4,13 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from service.core.goals.course import Course, Growth
+from service.core.arrays import Numbers
+from service.core.goals.course import Course
 from service.core.goals.growth import growth_of
 from service.core.goals.plan import Plan
 from service.core.goals.quadrature import Quadrature
 from service.core.goals.recursion import Recursion
+from service.core.goals.surprises import Surprises, blended, surprises_of
 from service.core.goals.timeline import Timeline, timeline
 from service.core.goals.wealth import Wealth
 from service.core.goals.work import Work
@@ -30,49 +32,65 @@ class Evaluation:
     numerical_error: float
 
 
-def evaluate(plan: Plan, work: Work, reported: bool) -> Evaluation:
-    """Compute a plan; `reported`: with the law of wealth at every year, not at the horizon alone."""
+@dataclass(frozen=True)
+class Runs:
+    """Everything that runs of one plan share."""
+
+    plan: Plan
+    dates: Timeline
+    work: Work
+
+    def blend(self, reported: frozenset[int], averages: bool = True) -> tuple[Course, float]:
+        """Follow the plan for every possible mean return, and mix; with the error of the mixing."""
+        surprises = surprises_of(self.plan)
+        courses = [self.one(reported, RATIO, averages, surprise) for surprise in surprises.values]
+        return blended(surprises, courses), self._error_of(surprises, courses)
+
+    def one(self, reported: frozenset[int], ratio: float, averages: bool, surprise: float = 0.0) -> Course:
+        """Follow the plan once."""
+        growth = growth_of(self.plan, self.dates, surprise)
+        least = min((target for target in self.plan.targets if target > 0), default=None)
+        recursion = Recursion(self.dates.flows, growth, reported, Quadrature(self.work), least, averages, ratio)
+        return recursion.run(self.plan.initial_value or 0.0)
+
+    def chances(self, course: Course) -> Numbers:
+        """Give the probabilities that an error is stated for: depleted by each date, success at each target."""
+        last = course.wealth.get(self.dates.dates.size - 1)
+        reached = [last.solvent_at_least(target) for target in self.plan.targets] if last else []
+        return np.concatenate([np.cumsum(course.unpaid + course.lost), reached])
+
+    def _error_of(self, surprises: Surprises, courses: list[Course]) -> float:
+        """Estimate the error of the rule over the mean return by that of the rule with half of its places."""
+        if len(courses) == 1:
+            return 0.0
+        chances = np.array([self.chances(course) for course in courses])
+        half = 2 * surprises.weights[::2] @ chances[::2]
+        # halving the steps raises the error of a Gaussian rule to its fourth power
+        return float(np.abs(half - surprises.weights @ chances).max()) ** 3
+
+
+def evaluate(plan: Plan, work: Work) -> Evaluation:
+    """Compute a plan, with the law of wealth at every year."""
     dates = timeline(plan)
-    last = dates.dates.size - 1
-    shown = frozenset(int(year) for year in dates.years) if reported else frozenset([last])
-    growth = growth_of(plan, dates)
-    course = run(plan, dates, growth, shown, work, RATIO)
-    coarse = run(plan, dates, growth, frozenset([last]), work, RATIO / COARSER, averages=False)
-    difference = max(
-        float(np.abs(np.cumsum(coarse.unpaid - course.unpaid)).max()),
-        *(
-            abs(coarse.wealth[last].solvent_at_least(target) - course.wealth[last].solvent_at_least(target))
-            for target in plan.targets
-        ),
-    )
+    last = frozenset([dates.dates.size - 1])
+    runs = Runs(plan, dates, work)
+    course, mixing = runs.blend(frozenset(int(year) for year in dates.years))
+    fine = course if mixing == 0 else runs.one(last, RATIO, averages=False)
+    coarse = runs.one(last, RATIO / COARSER, averages=False)
+    difference = float(np.abs(runs.chances(coarse) - runs.chances(fine)).max())
     # the rule's error falls as exp(-pi^2 r^2); ten times what that makes of the difference
     finer = min(1.0, 10 * float(np.exp(-np.square(np.pi * RATIO) * (1 - COARSER**-2))))
-    return Evaluation(dates, course, "lognormal_mixture_quadrature", max(finer * difference, course.defect, FLOOR))
-
-
-def run(
-    plan: Plan,
-    dates: Timeline,
-    growth: Growth,
-    reported: frozenset[int],
-    work: Work,
-    ratio: float = RATIO,
-    averages: bool = True,
-) -> Course:
-    """Follow the plan once."""
-    least = min((target for target in plan.targets if target > 0), default=None)
-    recursion = Recursion(dates.flows, growth, reported, Quadrature(work), least, averages, ratio)
-    return recursion.run(plan.initial_value or 0.0)
+    error = mixing + max(finer * difference, course.defect, FLOOR)
+    return Evaluation(dates, course, "lognormal_mixture_quadrature", error)
 
 
 def final_wealth(plan: Plan, work: Work) -> Wealth:
-    """Give the law of wealth at the horizon, by one run."""
+    """Give the law of wealth at the horizon."""
     dates = timeline(plan)
     last = dates.dates.size - 1
-    growth = growth_of(plan, dates)
-    return run(plan, dates, growth, frozenset([last]), work, averages=False).wealth[last]
+    return Runs(plan, dates, work).blend(frozenset([last]), averages=False)[0].wealth[last]
 
 
 def chance(plan: Plan, solvency: bool, work: Work) -> float:
-    """Give the probability of success at the first target, or of paying every withdrawal, by one run."""
+    """Give the probability of success at the first target, or of paying every withdrawal."""
     return final_wealth(plan, work).solvent_at_least(0.0 if solvency else plan.targets[0])

@@ -5,8 +5,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from service.core.goals.evaluation import run
-from service.core.goals.growth import growth_of
+from service.core.goals.evaluation import Runs
 from service.core.goals.lifetime import TableLife
 from service.core.goals.plan import Plan
 from service.core.goals.timeline import timeline
@@ -41,7 +40,7 @@ def horizon_search(plan: Plan, wanted: float, solvency: bool, last: bool, work: 
     # what comes at the end of the last step counts, but as every step is judged, it is judged here
     opened = replace(dates, flows=np.append(dates.flows[:-1], 0.0))
     reported = frozenset(int(position) for position in positions)
-    course = run(whole, opened, growth_of(whole, dates), reported, work, averages=False)
+    course, _ = Runs(whole, opened, work).blend(reported, averages=False)
     target = 0.0 if solvency else plan.targets[0]
     reached = np.array([course.wealth[p].paying(float(dates.closing[p])).solvent_at_least(target) for p in positions])
     enough = reached >= wanted - TIE

@@ -1,6 +1,7 @@
 """Every figure of a plan."""
 
-from dataclasses import dataclass
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -8,11 +9,14 @@ import numpy as np
 from service.core.arrays import Numbers, number
 from service.core.goals.evaluation import Evaluation, evaluate
 from service.core.goals.plan import Plan
+from service.core.goals.sensitivities import Sensitivities, sensitivities
 from service.core.goals.wealth import Wealth
 from service.core.goals.work import Work
 from service.core.portfolio.frequencies import RESOLVED, Frequencies, frequencies
 
 BANDS = (0.05, 0.25, 0.5, 0.75, 0.95)
+MAY_LIVE = 0.01
+"""Above this probability of being alive at the horizon it is said."""
 
 
 class Caution(NamedTuple):
@@ -55,15 +59,6 @@ class AtTarget(NamedTuple):
     mean_gap_if_missed: float
 
 
-class Sensitivities(NamedTuple):
-    """Changes of the success probability; nan where one cannot be computed."""
-
-    expected_return: float
-    volatility: float
-    contributions: float
-    horizon_years: float
-
-
 @dataclass(frozen=True)
 class Outlook:
     """The figures; those of the first target stand at the top. A figure without a value is nan, an infinite one inf.
@@ -98,9 +93,12 @@ def outlook(plan: Plan, with_sensitivities: bool = False, outcomes_count: int | 
     Raises DoesNotFit, paths leading from the request.
     """
     plan.complete()
+    work = Work()
     with np.errstate(all="ignore"):
-        found = evaluate(plan, Work(), reported=True)
-        return _figures(plan, found, outcomes_count)
+        figures = _figures(plan, evaluate(plan, work), outcomes_count)
+        if with_sensitivities:
+            figures = replace(figures, sensitivities=sensitivities(plan, figures.success_probability, work))
+        return replace(figures, cautions=tuple(_cautions(plan, figures)))
 
 
 def _figures(plan: Plan, found: Evaluation, outcomes_count: int | None) -> Outlook:
@@ -161,3 +159,20 @@ def _money_lasts(found: Evaluation) -> tuple[MoneyLasts, ...]:
     at = np.searchsorted(cumulative, np.array(BANDS))
     dates = np.append(found.timeline.dates, np.nan)
     return tuple(MoneyLasts(level, float(dates[index])) for level, index in zip(BANDS, at, strict=True))
+
+
+def _cautions(plan: Plan, figures: Outlook) -> Iterator[Caution]:
+    """Say what a reader of these figures has to know."""
+    yield Caution("success_hides_size")
+    yield Caution("bands_are_not_paths")
+    median = figures.by_year.bands[BANDS.index(0.5)].wealth[-1]
+    if figures.expected_wealth > median:
+        yield Caution("mean_above_typical")
+    if any((flow.amount or 0.0) < 0 for flow in plan.cash_flows):
+        yield Caution("same_spending_whatever_happens")
+    if plan.inflation_rate != 0:
+        yield Caution("steady_inflation")
+    if plan.parameter_uncertainty == "ignored":
+        yield Caution("estimates_taken_as_true")
+    if figures.alive_at_horizon is not None and figures.alive_at_horizon > MAY_LIVE:
+        yield Caution("life_beyond_horizon", {"alive_at_horizon": figures.alive_at_horizon})
