@@ -17,7 +17,7 @@ from service.schemas.answers import Result
 from service.schemas.assets import AssetsField
 from service.schemas.cautions import about_mixes, beside_shortfalls, sentence
 from service.schemas.fields import ChoiceField, MatrixField, NumberField
-from service.schemas.floor_question import FloorQuestion, floor_of, settings_of, slips_in
+from service.schemas.floor_question import FloorQuestion, floor_of, settings_of, slips_in, work_of
 from service.schemas.members import GroupField
 from service.schemas.portfolio import Portfolio, PortfolioListField, resolved
 from service.schemas.question import Asked
@@ -72,6 +72,13 @@ EXAMPLES = {
 }
 
 
+def work(asked: Asked) -> float:
+    """Count the laws of the horizon; those of mixes follow from the assets and are few."""
+    columns, horizon = asked.get("portfolio_columns"), asked.get("horizon_years", 1.0)
+    rows = [columns] if columns is not None else asked["portfolios"]
+    return work_of([row.returns for row in rows if row.returns is not None], horizon)
+
+
 @endpoint(
     "/v1/rankings",
     name="Ranking",
@@ -80,6 +87,7 @@ EXAMPLES = {
     examples=EXAMPLES,
     batch=False,
     write=write_ranking,
+    work=work,
 )
 def rankings(asked: Asked) -> Result:
     """Which portfolio is the safest for this floor?"""

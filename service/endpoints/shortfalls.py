@@ -7,7 +7,7 @@ from service.schemas.answers import AnswerShape, Plain, Result
 from service.schemas.assets import AssetsField
 from service.schemas.cautions import about_mixes, beside_shortfalls
 from service.schemas.fields import NumberField
-from service.schemas.floor_question import FloorQuestion, floor_of, settings_of, slips_in
+from service.schemas.floor_question import OF_AN_INVERSION, FloorQuestion, floor_of, settings_of, slips_in, work_of
 from service.schemas.portfolio import PortfolioField, resolved
 from service.schemas.question import Asked
 from service.schemas.shortfall import outcomes_shape, shortfall_shape, shortfall_values
@@ -41,7 +41,13 @@ EXAMPLES = {
 }
 
 
-@endpoint("/v1/shortfalls", name="Shortfall", question=ShortfallQuestion, answers=ANSWERS, examples=EXAMPLES)
+def work(asked: Asked) -> float:
+    """Count the law of the horizon; that of a mix as one that has to be compounded."""
+    returns = asked["portfolio"].returns
+    return OF_AN_INVERSION if returns is None else work_of([returns], asked.get("horizon_years", 1.0))
+
+
+@endpoint("/v1/shortfalls", name="Shortfall", question=ShortfallQuestion, answers=ANSWERS, examples=EXAMPLES, work=work)
 def shortfalls(asked: Asked) -> Result:
     """How likely does a portfolio miss a floor, and by how much?"""
     portfolio, assets = asked["portfolio"], asked.get("assets")

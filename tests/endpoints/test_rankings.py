@@ -151,6 +151,14 @@ def test_correlations_are_taken_with_rows_and_with_columns(ask: Asker) -> None:
     assert "independence_assumed" not in [caution["code"] for caution in rows["cautions"]]
 
 
+def test_equal_laws_are_counted_once(ask: Asker) -> None:
+    returns = [{"model": "normal", "expected_return": 0.05 + 1e-5 * i, "volatility": 0.1} for i in range(600)]
+    many = {"portfolios": [{"returns": each} for each in returns], "threshold": 0.02, "horizon_years": 10}
+    assert ask.faults(PATH, many) == {"": "too_much_work"}
+    same = {"portfolios": [{"returns": returns[0]}] * 600, "threshold": 0.02, "horizon_years": 10}
+    assert len(ask.answer(PATH, same)["ranking"]) == 600
+
+
 def test_ten_thousand_portfolios_from_columns(ask: Asker) -> None:
     count = 10_000
     columns = {"model": "normal", "expected_return": np.linspace(0.0, 0.1, count).tolist(), "volatility": 0.1}

@@ -241,6 +241,20 @@ def test_every_return_model_answers_one_period_and_many(ask: Asker) -> None:
             assert answer["expected_gap"] > 0
 
 
+def test_a_batch_of_laws_that_have_to_be_compounded_is_counted(ask: Asker) -> None:
+    monthly = {
+        "model": "student_t",
+        "expected_return": 0.005,
+        "volatility": 0.04,
+        "degrees_of_freedom": 4,
+        "period": "month",
+    }
+    questions = [{"portfolio": {"returns": monthly}, "threshold": 0.02}] * 500
+    assert ask.faults(PATH, {"questions": questions}) == {"/questions": "too_much_work"}
+    plain = [question | {"horizon_years": 1 / 12} for question in questions]
+    assert ask.answer(PATH, {"questions": plain})["length"] == 500
+
+
 def test_a_batch_of_shortfalls(ask: Asker) -> None:
     questions = [{"portfolio": BALANCED, "threshold": floor} for floor in (0.0, 0.02)]
     batch = ask.answer(PATH, {"questions": questions})
