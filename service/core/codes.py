@@ -48,6 +48,7 @@ FAULTS = {
     "not_representable": "The parameters are so extreme that a double cannot hold what follows from them.",
     "compounding_not_available": "The return model does not take this compounding.",
     "horizon_not_divisible": "The horizon is no whole number of periods, and the law of the returns does not divide.",
+    "not_accurate_enough": "The law cannot be computed accurately enough; `numerical_error` and `limit` say how far off.",
     "too_much_work": "The question would take too long to compute; `work` and `limit` say by how much.",
     "predictive_not_available": "The uncertainty of the estimates cannot be included for this return model.",
     "must_add_up_to_one": "The weights must add up to 1.",

@@ -10,6 +10,9 @@ from service.core.returns.laws.collected import CollectedLaw, Positions
 from service.core.returns.model import ReturnModel
 from service.core.returns.work import MOST_LAWS, refuse_beyond, refuse_work
 
+SAMPLED = 20
+"""After so many laws the work for all of them is foreseen."""
+
 M = TypeVar("M", bound=ReturnModel)
 
 
@@ -25,6 +28,8 @@ def law_of_each(model: M, make: Callable[[M], HorizonLaw]) -> HorizonLaw:
     for index, one in enumerate(models):
         law = make(one)
         work += law.work
+        if index + 1 == SAMPLED:
+            refuse_work(work * len(models) / SAMPLED)
         refuse_work(work)
         parts.append((law, np.flatnonzero(places == index)))
     return CollectedLaw(parts, places.size)

@@ -47,7 +47,8 @@ class Returns:
 
     def moments(self) -> Moments:
         """Give the moments of the modelled return of one period."""
-        return self.model.moments_under(self.compounding)
+        with np.errstate(all="ignore"):
+            return self.model.moments_under(self.compounding)
 
     def periods(self, horizon_years: float) -> Numbers:
         """Give the number of periods in the horizon, the whole number where it is one within 1e-9."""

@@ -36,3 +36,13 @@ def thresholds_beyond(given: int, most: int) -> DoesNotFit:
     """Make the refusal of more thresholds (or outcomes) than one law over this horizon answers at once."""
     detail = f"Over this horizon the law answers at most {most} thresholds at once; these are {given}."
     return too_much_work(("threshold",), detail, given, most)
+
+
+def not_accurate_enough(numerical_error: float, limit: float) -> DoesNotFit:
+    """Make the refusal of a law whose density is too spiky for the frequencies that may be computed."""
+    detail = (
+        f"The law over this horizon would be off by up to {numerical_error:.2g}, as the return of one period is too "
+        "concentrated for its tails; ask for more periods, or give parameters further from the end of their range."
+    )
+    params = {"numerical_error": numerical_error, "limit": limit}
+    return DoesNotFit([Refusal(("horizon_years",), "not_accurate_enough", detail, params)])

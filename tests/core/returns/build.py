@@ -18,9 +18,11 @@ def returns(
     **parameters: Any,
 ) -> Returns:
     """Returns as a client would describe them; lists become arrays."""
-    values = {name: as_numbers(value) for name, value in parameters.items()}
+    kind = RETURN_MODELS[model]
+    declared = kind.parameterisations[0].parameters
+    values = {name: declared[name].as_numbers(value) for name, value in parameters.items()}
     size = None if sample_size is None else as_numbers(sample_size)
-    return Returns(RETURN_MODELS[model](**values), period, periods_per_year, compounding, size)
+    return Returns(kind(**values), period, periods_per_year, compounding, size)
 
 
 def law(model: str, *, horizon_years: float = 1, uncertainty: str = "ignored", **given: Any) -> HorizonLaw:

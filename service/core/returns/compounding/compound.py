@@ -8,13 +8,13 @@ from service.core.returns.law import HorizonLaw
 from service.core.returns.work import too_much_work
 
 MOST_PERIODS = 100_000
-NEVER_ALIVE = 1e-12
+NEVER_ALIVE = 1e-13
 
 
 def compounded(step: Step, periods: int) -> HorizonLaw:
     """Give the law of the return over n periods by Fourier inversion; a total loss if nearly nothing else happens."""
     refuse_periods(periods)
-    if 1 - step.growth.zero_probability < NEVER_ALIVE:
+    if (1 - step.growth.zero_probability) ** periods < NEVER_ALIVE:
         law = point(MINUS_INFINITY, step.growth, number(periods))
         law.numerical_error = NEVER_ALIVE
         return law

@@ -4,19 +4,22 @@ import numpy as np
 
 from service.core.arrays import NO_VALUE, Numbers, Truths, number
 from service.core.returns.compounding.compositions import compositions, count_of_compositions
-from service.core.returns.compounding.grid import Grid, band_of
+from service.core.returns.compounding.grid import UNFOLDED, Band, Grid, band_of
 from service.core.returns.compounding.quantiles import QuantileTable
 from service.core.returns.compounding.step import Step
 from service.core.returns.compounding.window import TAIL, Window, window_of
 from service.core.returns.law import COINCIDENCE, Gaps, HorizonLaw, LogGrowth, log_growth_factor
 from service.core.returns.laws.atoms import LEVEL_TIE
-from service.core.returns.work import OF_A_LAW, thresholds_beyond, too_much_work
+from service.core.returns.work import OF_A_LAW, not_accurate_enough, thresholds_beyond, too_much_work
 
 OTHER_STRETCH = 1.19
 SAFETY = 3.0
 SAFETY_UNRESOLVED = 10.0
 MOST_ATOMS = 200_000
 MOST_TERMS = 3e8
+LEAST_ACCURACY = 1e-2
+EVALUATIONS = 1e3
+"""Places at which a law in a ranking is looked at."""
 COMPARED_AT = np.sin(np.linspace(-np.pi / 2, np.pi / 2, 33))
 
 
@@ -44,17 +47,19 @@ class FourierLaw(HorizonLaw):
         grids = self._grids(step, periods, window)
         self._grid = grids[0]
         self._table = QuantileTable(self._grid)
-        self.work = OF_A_LAW + sum(grid.work for grid in grids)
+        if self.numerical_error > LEAST_ACCURACY:
+            raise not_accurate_enough(self.numerical_error, LEAST_ACCURACY)
+        self.work = OF_A_LAW + sum(grid.work for grid in grids) + EVALUATIONS * self._grid.frequencies.size
 
     def _grids(self, step: Step, periods: int, window: Window) -> tuple[Grid, Grid]:
         band = band_of(step, periods, window)
         first, second = (
             Grid(step, periods, window, band, stretch, not band.resolved) for stretch in (1.0, OTHER_STRETCH)
         )
-        self.numerical_error = self._stated(step, periods, window, (first, second), band.resolved)
+        self.numerical_error = self._stated(step, periods, window, (first, second), band)
         return first, second
 
-    def _stated(self, step: Step, periods: int, window: Window, grids: tuple[Grid, Grid], resolved: bool) -> float:
+    def _stated(self, step: Step, periods: int, window: Window, grids: tuple[Grid, Grid], band: Band) -> float:
         """Give the error that the difference of two grids and the mass show."""
         sharp = [periods * (part.sharp_places() - window.centre) for part in step.parts]
         middle, half = (window.low + window.high) / 2, window.width / 2
@@ -62,10 +67,10 @@ class FourierLaw(HorizonLaw):
         compared = np.concatenate([middle + half * COMPARED_AT, body, *sharp])
         first, second = (grid.relative_gaps(compared) for grid in grids)
         difference = float(np.abs(first - second).max())
-        factor = SAFETY if resolved else SAFETY_UNRESOLVED
+        factor = SAFETY if band.resolved else SAFETY_UNRESOLVED
         alive = grids[0].alive + float(self._sums[0, -1])
         lost = abs(alive - float(1 - self._growth.total_loss(self._periods)))
-        return factor * difference + lost + 2 * TAIL + 3e-14 + 3e-16 * periods
+        return factor * difference + lost + 2 * TAIL + 3e-14 + (10 * UNFOLDED if band.lattice else 3e-16) * periods
 
     def mean(self) -> Numbers:
         return self._growth.moments(self._periods)[0]

@@ -18,8 +18,11 @@ MOST_WORK = 1e8
 """Frequencies times nodes of one grid: about a quarter of a second."""
 LATTICE_FROM = 4e6
 """From here on a Fourier transform on an even lattice is quicker, where the density allows one."""
-MOST_FREQUENCIES = 1 << 17
-PROBES = np.linspace(11 / 12, 1, 12)
+SHORTEST_LATTICE = 1 << 14
+LONGEST_LATTICE = 1 << 20
+UNFOLDED = 1e-13
+"""A transform below this may fold back."""
+PROBES = np.linspace(11 / 12, 1, 8)
 NEGLIGIBLE = 2e-15
 CUT = 8.0
 """exp(-8) at the last frequency: a smooth end where the transform has not come to rest."""
@@ -43,48 +46,75 @@ def band_of(step: Step, periods: int, window: Window) -> Band:
     waves = window.width / (2 * np.pi)
     limits = [np.inf]
     if len(step.parts) > 1:
-        limits = [_rest_of(part, lambda reach, nodes: reach * waves * nodes < MOST_WORK)[0] for part in step.parts]
-    may_lattice = all(part.smooth for part in step.parts)
+        limits = [_rest_of(part, lambda reach, nodes: reach * waves * nodes < MOST_WORK) for part in step.parts]
     highest = 8 / (window.deviation * np.sqrt(periods))
+    on_lattice: Band | None = None
+    tried = False
     while True:
-        size, nodes = _transform_at(step, window, limits, highest * PROBES)
-        share = highest * waves / MOST_FREQUENCIES if may_lattice else np.sqrt(highest * waves * nodes / MOST_WORK)
-        resolved = bool((size**periods < RESOLVED).all())
-        growth = min(1.5, 1 / share)
+        bound, nodes = _bound_at(step, periods, limits, highest * PROBES)
+        resolved = bool((bound < RESOLVED).all())
+        work = highest * waves * nodes
+        if work > LATTICE_FROM and not tried and all(part.smooth for part in step.parts):
+            tried = True
+            on_lattice = lattice_band(step, periods, window)
+        if on_lattice:
+            return on_lattice
+        growth = min(1.5, float(np.sqrt(MOST_WORK / work)))
         if resolved or growth < 1.05:
-            break
+            return Band(highest * min(growth, 1), tuple(limits), resolved and growth >= 1)
         highest *= growth
-    if may_lattice and highest * waves * nodes > LATTICE_FROM:
-        rests = [_rest_of(part, lambda reach, _: reach * waves < 2 * MOST_FREQUENCIES) for part in step.parts]
-        if all(at_rest for _, at_rest in rests):
-            return Band(highest, tuple(max(reach, highest) for reach, _ in rests), resolved, lattice=True)
-    return Band(highest, tuple(limits), resolved)
 
 
-def _rest_of(part: Part, allowed: Callable[[float, int], bool]) -> tuple[float, bool]:
-    """Frequency from which on one component's transform is negligible, or beyond what is allowed; and whether it is."""
+def lattice_band(step: Step, periods: int, window: Window) -> Band | None:
+    """Find the band from transforms on ever finer lattices; None where the finest still leaves something out."""
+    period = SLACK * window.width
+    length = SHORTEST_LATTICE
+    while length <= LONGEST_LATTICE:
+        sizes = np.abs(_lattice_transform(step, window, period, length)[0][: length // 2])
+        if sizes[-length // 16 :].max() < UNFOLDED:
+            frequency = 2 * np.pi / period
+            rest = np.flatnonzero(sizes >= UNFOLDED)[-1] + 1
+            highest = np.flatnonzero(sizes**periods >= RESOLVED)[-1] + 1
+            return Band(float(highest * frequency), (float(rest * frequency),), resolved=True, lattice=True)
+        length *= 4
+    return None
+
+
+def _lattice_transform(step: Step, window: Window, period: float, length: int) -> tuple[Complexes, Numbers, Numbers]:
+    """Transform of the components on the half-shifted grid, from even steps in X over one period; with the steps."""
+    x: Numbers = window.low + period / length * np.arange(float(length))
+    weights = period / length * np.sum([part.density(x + window.centre) for part in step.parts], axis=0)
+    turned = np.fft.ifft(weights * np.exp(1j * np.pi / length * np.arange(length))) * length
+    return turned, x, weights
+
+
+def _rest_of(part: Part, allowed: Callable[[float, int], bool]) -> float:
+    """Frequency from which on one component's transform is negligible, or beyond what is allowed."""
     x, weights = part.nodes(0.0)
     mean = weights @ x / weights.sum()
     reach = 4 / float(np.sqrt(weights @ np.square(x - mean) / weights.sum()) + 1e-300)
     while True:
         x, weights = part.nodes(reach)
         sizes = np.abs(np.exp(1j * np.multiply.outer(reach * PROBES, x)) @ weights)
-        at_rest = bool((sizes < NEGLIGIBLE).all())
-        if at_rest or not allowed(reach, x.size):
-            return reach, at_rest
+        if (sizes < NEGLIGIBLE).all() or not allowed(reach, x.size):
+            return reach
         reach *= 1.5
 
 
-def _transform_at(step: Step, window: Window, limits: list[float], frequencies: Numbers) -> tuple[Numbers, int]:
-    """Size of the continuous part's transform at some frequencies, and the number of nodes behind it."""
-    total = np.zeros(frequencies.size, np.complex128)
+def _bound_at(step: Step, periods: int, limits: list[float], frequencies: Numbers) -> tuple[Numbers, int]:
+    """Bound on the growth's transform, less that of its listed values, and the number of nodes behind it.
+
+    From the sizes of the components' transforms: together they may cancel at one frequency and not at a higher one.
+    """
+    total = np.zeros(frequencies.size)
     nodes = 0
     for part, limit in zip(step.parts, limits, strict=True):
         if frequencies[0] < limit:
             x, weights = part.nodes(frequencies[-1])
             nodes += x.size
-            total += np.exp(1j * np.multiply.outer(frequencies, x - window.centre)) @ weights
-    return np.abs(total), nodes
+            total += np.abs(np.exp(1j * np.multiply.outer(frequencies, x)) @ weights)
+    atoms = step.masses.sum()
+    return (total + atoms) ** periods - atoms**periods, nodes
 
 
 class Grid:
@@ -106,26 +136,28 @@ class Grid:
         self.highest = band.highest * stretch
         count = max(FEWEST, int(self.highest / self.step))
         found = self._on_lattice if band.lattice else self._on_nodes
-        parts, mass, growth = found(step.parts, [stretch * reach for reach in band.reaches], count)
+        parts, mass, growth = found(step, [stretch * reach for reach in band.reaches], count)
         points = step.values - window.centre
         atoms = transform(points, step.masses, self.step, count) if points.size else np.zeros(count)
         atom_mass = float(step.masses.sum())
         atom_growth = _exponential_moments(points, step.masses, window.high)
         # the probability of growth above 0 that is not one of the listed atoms
         self.alive = (mass + atom_mass) ** periods - atom_mass**periods
-        self._log_growth = periods * np.log(growth + atom_growth)
-        self._log_atoms = periods * np.log(atom_growth)
+        # a moment that is made beyond the window has no part in the alias: there exp(L - k) is cut at 1
+        inside = window.exponent > np.array([1.0, 2.0])
+        self._log_growth = np.where(inside, periods * np.log(growth + atom_growth), -np.inf)
+        self._log_atoms = np.where(inside, periods * np.log(atom_growth), -np.inf)
         self.frequencies: Numbers = (np.arange(float(count)) + 0.5) * self.step
         powers = np.conj((parts + atoms) ** periods - atoms**periods)
         if smooth:
             powers = powers * np.exp(-CUT * np.square(self.frequencies / self.highest))
         self.coefficients = self.step / np.pi * powers * kernels(self.frequencies)
 
-    def _on_nodes(self, parts: tuple[Part, ...], reaches: list[float], count: int) -> tuple[Complexes, float, Numbers]:
+    def _on_nodes(self, step: Step, reaches: list[float], count: int) -> tuple[Complexes, float, Numbers]:
         """Transform, mass and exponential moments of the components, each as far as its transform reaches."""
         total, mass, growth = np.zeros(count, np.complex128), 0.0, np.zeros(2)
         self.work = 0.0
-        for part, reach in zip(parts, reaches, strict=True):
+        for part, reach in zip(step.parts, reaches, strict=True):
             here = max(1, int(min(count, reach / self.step)))
             x, weights = part.nodes(here * self.step)
             x = x - self.window.centre
@@ -135,17 +167,13 @@ class Grid:
             self.work += float(here * x.size)
         return total, mass, growth
 
-    def _on_lattice(
-        self, parts: tuple[Part, ...], reaches: list[float], count: int
-    ) -> tuple[Complexes, float, Numbers]:
+    def _on_lattice(self, step: Step, reaches: list[float], count: int) -> tuple[Complexes, float, Numbers]:
         """The same from even steps in X over one period, so small that no frequency of one period folds back."""
         length = 1 << int((max(reaches) + self.highest) / self.step).bit_length()
-        x: Numbers = self.window.low + self.period / length * np.arange(float(length))
-        weights = self.period / length * np.sum([part.density(x + self.window.centre) for part in parts], axis=0)
-        turned = np.fft.ifft(weights * np.exp(1j * np.pi / length * np.arange(length)))[:count] * length
-        total = turned * np.exp(1j * self.window.low * self.step * (np.arange(count) + 0.5))
+        turned, x, weights = _lattice_transform(step, self.window, self.period, length)
+        shift = np.exp(1j * self.window.low * self.step * (np.arange(count) + 0.5))
         self.work = 20.0 * length
-        return total, float(weights.sum()), _exponential_moments(x, weights, self.window.high)
+        return turned[:count] * shift, float(weights.sum()), _exponential_moments(x, weights, self.window.high)
 
     def relative_gaps(self, k: Numbers) -> Numbers:
         """g_0, g_1, g_2 at k, along a new first axis; k is flat."""
@@ -156,6 +184,13 @@ class Grid:
             once, twice = self._growth_over(k[beyond])
             found[:, beyond] = [self.alive + 0 * once, self.alive - once, self.alive - 2 * once + twice]
         return np.where(k < self.window.low, 0.0, np.clip(found, 0.0, self.alive))
+
+    def distribution(self, k: Numbers) -> Numbers:
+        """g_0 alone; k is flat."""
+        inside = np.clip(k, self.window.low, self.window.high)
+        (found,) = series(inside, self.coefficients[:1], self.step)
+        found = np.clip(self.alive / 2 + found, 0.0, self.alive)
+        return np.where(k < self.window.low, 0.0, np.where(k > self.window.high, self.alive, found))
 
     def _growth_over(self, k: Numbers) -> Numbers:
         """E[exp(L - k)] and E[exp(2(L - k))] of what is not an atom, along a new first axis."""

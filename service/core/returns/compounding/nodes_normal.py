@@ -44,9 +44,9 @@ class NormalPart(Part):
     def nodes(self, highest: float) -> tuple[Numbers, Numbers]:
         if self._loss_at > NEAR_LOSS:
             return self._nodes_near_loss(highest)
-        z = evenly(-FARTHEST, FARTHEST, highest * self._steepest(np.linspace(-7.2, 7.2, 73)) + 9.5)
+        z, distance = evenly(-FARTHEST, FARTHEST, highest * self._steepest(np.linspace(-7.2, 7.2, 73)) + 9.5)
         y = self.mean + self.deviation * self.expansion.value(z)
-        weights = self.weight * (z[1] - z[0]) * normal_density(z)
+        weights = self.weight * distance * normal_density(z)
         return (np.log1p(y) if self.simple else y), weights
 
     def _steepest(self, z: Numbers) -> float:
@@ -62,9 +62,9 @@ class NormalPart(Part):
         z, x = self._from_loss(t)
         rise = np.diff(x) / np.diff(t)
         noticeable = np.exp(-np.minimum(z * z, 1400) / 2)[1:] > 1e-12
-        t = evenly(LEFT_END, last, highest * max(1.0, float(rise[noticeable].max(initial=0.0))) + 13)
+        t, distance = evenly(LEFT_END, last, highest * max(1.0, float(rise[noticeable].max(initial=0.0))) + 13)
         z, x = self._from_loss(t)
-        return x, self.weight * (t[1] - t[0]) * normal_density(z) / (1 + np.exp(-t))
+        return x, self.weight * distance * normal_density(z) / (1 + np.exp(-t))
 
     def _from_loss(self, t: Numbers) -> tuple[Numbers, Numbers]:
         beyond = np.logaddexp(0, t)

@@ -11,6 +11,7 @@ LEFT_END = -40.0
 STRAIGHT_BELOW = 0.25
 """With the total loss so close to the centre, or above it, log growth itself is a good variable."""
 NEGLIGIBLE = 1e-17
+COARSE = 400
 
 
 class StudentTPart(Part):
@@ -45,20 +46,25 @@ class StudentTPart(Part):
     def _straight(self, highest: float, farthest: float) -> tuple[Numbers, Numbers]:
         last = float(np.log(self.scale * (farthest + max(float(self._a), 0.0))))
         first = float(np.log(self.scale)) + LEFT_END
-        x = evenly(first, max(last, first + 45), highest + 46)
-        return x, self.density(x) * (x[1] - x[0])
+        x, distance = evenly(first, max(last, first + 45), highest + 46)
+        return x, self.density(x) * distance
 
     def _bent(self, highest: float, farthest: float) -> tuple[Numbers, Numbers]:
         a, bend = float(self._a), min(float(np.sqrt(self.v)), 4.0)
-        log_at_loss = float(log_t_density(self.v, np.asarray(a))) + np.log(a)
-        depth = min(max(0.3, 38 + log_at_loss), 60.0)
-        first = -float(np.arcsinh(2 * a / bend * np.sinh(depth)))
-        first = min(first, -float(np.arcsinh(2 / bend * min(a, 9.0))))
-        last = float(np.arcsinh(2 * a / bend * np.sinh(np.log1p(farthest / a))))
-        rise = 1.0 if log_at_loss > -69 else min(1.0, max(bend / (2 * a) * float(np.cosh(1.0)), 0.05))
-        t = evenly(first, last, highest * rise + (29 if self.v <= 6 else 46))
-        q = bend * np.sinh(t) / (2 * a)
+        ends = np.arcsinh(2 * a / bend * np.sinh([LEFT_END, np.log1p(farthest / a)]))
+        t = np.linspace(float(ends[0]), float(ends[1]), COARSE)
+        _, density, rise = self._bent_at(t, bend)
+        inside = np.flatnonzero(density > NEGLIGIBLE / 100)
+        first, last = t[max(inside[0] - 1, 0)], t[min(inside[-1] + 1, COARSE - 1)]
+        steepest = float(rise[density > NEGLIGIBLE].max())
+        t, distance = evenly(float(first), float(last), highest * steepest + (29 if self.v <= 6 else 46))
+        beside, density, _ = self._bent_at(t, bend)
+        return np.log1p(self.location) + beside, density * distance
+
+    def _bent_at(self, t: Numbers, bend: float) -> tuple[Numbers, Numbers, Numbers]:
+        """X - log(1 + location), the density of t, and dX/dt."""
+        q = bend * np.sinh(t) / (2 * self._a)
         beside = np.arcsinh(q)
-        z = a * np.expm1(beside)
-        slope = a * np.exp(beside) * bend * np.cosh(t) / (2 * a) / np.hypot(1.0, q)
-        return np.log1p(self.location) + beside, np.exp(log_t_density(self.v, z)) * slope * (t[1] - t[0])
+        rise = bend * np.cosh(t) / (2 * self._a) / np.hypot(1.0, q)
+        z = self._a * np.expm1(beside)
+        return beside, np.exp(log_t_density(self.v, z)) * self._a * np.exp(beside) * rise, rise

@@ -14,7 +14,7 @@ FINENESS = 4
 LEAST_LENGTH = 256
 TERMS = 12
 NEWTON_STEPS = 5
-MOST_TABULATED = 4096
+MOST_TABULATED = 10_000
 """Frequencies; with more the sum itself is searched, as the table would take much memory."""
 FACTORIALS = np.cumprod([1.0, *range(1, TERMS)])
 
@@ -64,7 +64,7 @@ class QuantileTable:
         if self._grid.frequencies.size > MOST_TABULATED:
             low, high = (np.full(probability.shape, end) for end in (window.low, window.high))
             return first_reaching(
-                lambda k: self._grid.relative_gaps(k)[0] + (atoms(k) if atoms else 0.0) - probability, low, high
+                lambda k: self._grid.distribution(k) + (atoms(k) if atoms else 0.0) - probability, low, high
             )
         spacing = self._spacing
         count = min(int(window.width / spacing) + 2, self._derivatives.shape[0])

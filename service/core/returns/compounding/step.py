@@ -63,6 +63,8 @@ class Step:
         return places[weights > 0], weights[weights > 0]
 
 
-def evenly(first: float, last: float, frequency: float) -> Numbers:
-    """Points on [first, last] for a rule that is exact up to this frequency of the integrand."""
-    return np.linspace(first, last, int(np.ceil((last - first) * frequency / (2 * np.pi))) + 2)
+def evenly(first: float, last: float, frequency: float) -> tuple[Numbers, float]:
+    """Points on [first, last], and their distance, for a rule that is exact up to this frequency of the integrand."""
+    count = int(np.ceil((last - first) * frequency / (2 * np.pi))) + 1
+    # the distance of two neighbours would have lost digits to their size
+    return np.linspace(first, last, count + 1), (last - first) / count

@@ -67,7 +67,7 @@ class ValuesLaw(FourierLaw):
         first = Grid(step, periods, window, band, 1.0, not band.resolved)
         second = Grid(step, periods, window, band, 1.19, not band.resolved)
         noise = 6 * np.sqrt(4 * collisions / (first.highest * window.width / 16))
-        self.numerical_error = float(noise) + self._stated(step, periods, window, (first, second), band.resolved)
+        self.numerical_error = float(noise) + self._stated(step, periods, window, (first, second), band)
         if self.numerical_error > NOTICEABLE:
             self.cautions = (*self.cautions, "discrete_law_approximated")
         return first, second

@@ -25,6 +25,8 @@ class Window:
     """Of one period's X."""
     low: float
     high: float
+    exponent: float
+    """The t of the best bound at the upper end: E[exp(L)] is made inside the window if it is above 1, and so on."""
 
     @property
     def width(self) -> float:
@@ -45,16 +47,20 @@ def window_of(step: Step, periods: int) -> Window:
     centre = float(weights @ x / alive)
     x = x - centre
     deviation = float(np.sqrt(weights @ (x * x) / alive))
-    high, low = (_reach(side * x[::side], weights[::side], periods, deviation * np.sqrt(periods)) for side in (1, -1))
-    return Window(centre, deviation, -low, high)
+    (high, exponent), (low, _) = (
+        _reach(side * x[::side], weights[::side], periods, deviation * np.sqrt(periods)) for side in (1, -1)
+    )
+    return Window(centre, deviation, -low, high, exponent)
 
 
-def _reach(x: Numbers, weights: Numbers, periods: int, scale: float) -> float:
-    """Give the upper end, from places in rising order."""
+def _reach(x: Numbers, weights: Numbers, periods: int, scale: float) -> tuple[float, float]:
+    """Give the upper end and the exponent of its bound, from places in rising order."""
     beyond = np.cumsum(weights[::-1])[::-1] * periods
     x = np.minimum(x, x[np.flatnonzero(beyond > SHARE_OF_JUMPS * TAIL)[-1]])
     exponents = np.concatenate([EXPONENTS / scale, PLAIN])
     products = np.multiply.outer(exponents, x)
     greatest = products.max(axis=1)
     logs = greatest + np.log(np.exp(products - greatest[:, np.newaxis]) @ weights)
-    return float(((periods * logs - np.log(TAIL)) / exponents).min())
+    bounds = (periods * logs - np.log(TAIL)) / exponents
+    best = int(np.argmin(bounds))
+    return float(bounds[best]), float(exponents[best])
