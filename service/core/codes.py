@@ -116,6 +116,7 @@ CAUTIONS = {
 }
 
 NULL_REASONS = {
+    "unattainable": "No value gives the wanted probability.",
     "other_standard": "The figure belongs to another standard.",
     "none_admissible": "No portfolio is admissible, so none leads.",
     "needs_shade": "The figure needs shade: the event to shade.",
