@@ -69,6 +69,23 @@ def test_the_mix_is_as_told(ask: Asker) -> None:
     assert "About {} % bonds, {} % shares, {} % property.".format(*weights) in README
 
 
+def test_the_goal_is_as_told(ask: Asker) -> None:
+    bodies = {address: json.loads(body) for address, body in CALLS if body}
+    outlook = ask.answer("/v1/goal-outlooks", bodies["/v1/goal-outlooks"])
+    needed = ask.answer("/v1/goal-requirements", bodies["/v1/goal-requirements"])
+    words = " ".join(README.split())
+    success, gap = outlook["success_probability"], outlook["expected_gap"]
+    assert f"`success_probability` is {success:.4f}, `expected_gap` {gap:,.0f}," in words
+    count = outlook["frequencies"]["success_probability"]["count"]
+    missed = outlook["mean_gap_if_missed"]
+    assert f"About {count} of them have the 70,000 after 15 years, about {100 - count} do not; those" in words
+    assert f"lack {missed:,.0f} on average" in words
+    offered = [f"{row['value']:.0f}" for row in needed["rounded"]]
+    assert f"{needed['value']:.2f} a month; `rounded` offers {{}}, {{}} and {{}}".format(*offered) in words
+    chance = 100 * needed["rounded"][1]["success_probability"]
+    assert f"With {offered[1]} a month it is about {chance:.0f} of 100" in words
+
+
 def test_the_problem_is_as_shown(ask: Asker) -> None:
     shown = json.loads(re.findall(r"```json\n(.*?)\n```", README, re.DOTALL)[1])
     returns = {"model": "normal", "expected_retrun": 0.05, "volatility": -0.08}
