@@ -1,7 +1,7 @@
 """What becomes of a plan's wealth from date to date."""
 
 from dataclasses import dataclass, field
-from typing import Protocol
+from typing import ClassVar, Protocol
 
 import numpy as np
 
@@ -9,9 +9,24 @@ from service.core.arrays import Numbers, Truths
 from service.core.goals.points import Points, Spread
 from service.core.goals.wealth import PAID, ListedWealth, Wealth
 
+RATIO = 1.5
+"""Points in one deviation."""
+COARSER = 1.25
+"""The run that shows the error has so much fewer points."""
+
 
 class Growth(Protocol):
-    """Growth from each date to the next, independent, and the law of wealth that follows from points of it."""
+    """Growth from each date to the next, independent, and the law of wealth that follows from points of it.
+
+    A run's error is that share of its difference to a coarser run, at least `error_floor`.
+    """
+
+    method: ClassVar[str]
+    error_share: ClassVar[float]
+
+    @property
+    def error_floor(self) -> float:
+        """The least error that is stated."""
 
     @property
     def random(self) -> Truths:
@@ -51,7 +66,8 @@ class Course:
 
     `unpaid`: P(first depleted by the flow of the date). `lost`: P(first depleted by a total loss up to the date).
     `expected`: E[V] before the flow of the date (at the horizon after it). `wealth`: the law of V at the dates asked
-    for, likewise. `defect`: largest probability that the recursion lost or made.
+    for, likewise. `defect`: largest probability that the recursion lost or made. What it was computed by, and how its
+    error follows from a coarser run, as in Growth; as it stands, for outcomes that are all listed.
     """
 
     unpaid: Numbers
@@ -59,6 +75,9 @@ class Course:
     expected: Numbers
     wealth: dict[int, Wealth] = field(default_factory=dict)
     defect: float = 0.0
+    method: str = "enumeration"
+    error_share: float = 0.0
+    error_floor: float = 1e-12
 
     @classmethod
     def over(cls, dates: int) -> "Course":

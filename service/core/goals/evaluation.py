@@ -5,8 +5,9 @@ from dataclasses import dataclass
 import numpy as np
 
 from service.core.arrays import Numbers
-from service.core.goals.course import Course
-from service.core.goals.growth import growth_of
+from service.core.goals.course import COARSER, RATIO, Course
+from service.core.goals.growth import divides, drifts, growth_of, step_laws
+from service.core.goals.listed import Step, listed_course
 from service.core.goals.plan import Plan
 from service.core.goals.quadrature import Quadrature
 from service.core.goals.recursion import Recursion
@@ -15,12 +16,6 @@ from service.core.goals.timeline import Timeline, timeline
 from service.core.goals.wealth import Wealth
 from service.core.goals.work import Work
 
-RATIO = 1.5
-COARSER = 1.25
-"""The second run has so much fewer points."""
-FLOOR = 1e-11
-"""Rounding of some hundred steps."""
-
 
 @dataclass(frozen=True)
 class Evaluation:
@@ -28,7 +23,6 @@ class Evaluation:
 
     timeline: Timeline
     course: Course
-    method: str
     numerical_error: float
 
 
@@ -42,16 +36,35 @@ class Runs:
 
     def blend(self, reported: frozenset[int], averages: bool = True) -> tuple[Course, float]:
         """Follow the plan for every possible mean return, and mix; with the error of the mixing."""
+        listed = self.listed(reported)
+        if listed:
+            return listed, 0.0
         surprises = surprises_of(self.plan)
         courses = [self.one(reported, RATIO, averages, surprise) for surprise in surprises.values]
         return blended(surprises, courses), self._error_of(surprises, courses)
 
     def one(self, reported: frozenset[int], ratio: float, averages: bool, surprise: float = 0.0) -> Course:
         """Follow the plan once."""
-        growth = growth_of(self.plan, self.dates, surprise)
+        quadrature = Quadrature(self.work)
+        growth = growth_of(self.plan, self.dates, quadrature, surprise, RATIO / ratio)
         least = min((target for target in self.plan.targets if target > 0), default=None)
-        recursion = Recursion(self.dates.flows, growth, reported, Quadrature(self.work), least, averages, ratio)
+        recursion = Recursion(self.dates.flows, growth, reported, quadrature, least, averages, ratio)
         return recursion.run(self.plan.initial_value or 0.0)
+
+    def listed(self, reported: frozenset[int]) -> Course | None:
+        """Follow every path, where growth takes few values and there are few; else None."""
+        if any(divides(leg) for leg in self.plan.legs):
+            return None
+        laws, kinds, periods = step_laws(self.plan, self.dates)
+        atoms = [found for law in laws if (found := law.atoms())]
+        if len(atoms) < len(laws):
+            return None
+        certain = np.exp(drifts(self.plan, self.dates))
+        steps = [
+            Step(np.exp(atoms[kind][0]), atoms[kind][1], int(n), float(factor))
+            for kind, n, factor in zip(kinds, periods, certain, strict=True)
+        ]
+        return listed_course(self.dates.flows, steps, self.plan.initial_value or 0.0, reported, self.work)
 
     def chances(self, course: Course) -> Numbers:
         """Give the probabilities that an error is stated for: depleted by each date, success at each target."""
@@ -72,16 +85,16 @@ class Runs:
 def evaluate(plan: Plan, work: Work) -> Evaluation:
     """Compute a plan, with the law of wealth at every year."""
     dates = timeline(plan)
-    last = frozenset([dates.dates.size - 1])
     runs = Runs(plan, dates, work)
     course, mixing = runs.blend(frozenset(int(year) for year in dates.years))
-    fine = course if mixing == 0 else runs.one(last, RATIO, averages=False)
-    coarse = runs.one(last, RATIO / COARSER, averages=False)
-    difference = float(np.abs(runs.chances(coarse) - runs.chances(fine)).max())
-    # the rule's error falls as exp(-pi^2 r^2); ten times what that makes of the difference
-    finer = min(1.0, 10 * float(np.exp(-np.square(np.pi * RATIO) * (1 - COARSER**-2))))
-    error = mixing + max(finer * difference, course.defect, FLOOR)
-    return Evaluation(dates, course, "lognormal_mixture_quadrature", error)
+    error = course.error_floor
+    if course.error_share > 0:
+        last = frozenset([dates.dates.size - 1])
+        fine = course if mixing == 0 else runs.one(last, RATIO, averages=False)
+        coarse = runs.one(last, RATIO / COARSER, averages=False)
+        difference = float(np.abs(runs.chances(coarse) - runs.chances(fine)).max())
+        error = mixing + max(course.error_share * difference, course.defect, course.error_floor)
+    return Evaluation(dates, course, error)
 
 
 def final_wealth(plan: Plan, work: Work) -> Wealth:

@@ -8,6 +8,7 @@ import numpy as np
 
 from service.core.arrays import Numbers, number
 from service.core.goals.evaluation import Evaluation, evaluate
+from service.core.goals.growth import discrete
 from service.core.goals.plan import Plan
 from service.core.goals.sensitivities import Sensitivities, sensitivities
 from service.core.goals.wealth import Wealth
@@ -15,6 +16,8 @@ from service.core.goals.work import Work
 from service.core.portfolio.frequencies import RESOLVED, Frequencies, frequencies
 
 BANDS = (0.05, 0.25, 0.5, 0.75, 0.95)
+NOTICEABLE = 1e-9
+NOTICEABLE_LOSS = 1e-12
 MAY_LIVE = 0.01
 """Above this probability of being alive at the horizon it is said."""
 
@@ -95,10 +98,11 @@ def outlook(plan: Plan, with_sensitivities: bool = False, outcomes_count: int | 
     plan.complete()
     work = Work()
     with np.errstate(all="ignore"):
-        figures = _figures(plan, evaluate(plan, work), outcomes_count)
+        found = evaluate(plan, work)
+        figures = _figures(plan, found, outcomes_count)
         if with_sensitivities:
             figures = replace(figures, sensitivities=sensitivities(plan, figures.success_probability, work))
-        return replace(figures, cautions=tuple(_cautions(plan, figures)))
+        return replace(figures, cautions=tuple(_cautions(plan, found, figures)))
 
 
 def _figures(plan: Plan, found: Evaluation, outcomes_count: int | None) -> Outlook:
@@ -128,7 +132,7 @@ def _figures(plan: Plan, found: Evaluation, outcomes_count: int | None) -> Outlo
         by_target=targets,
         sensitivities=None,
         outcomes=None if outcomes is None else wealth.quantiles(outcomes),
-        method=found.method,
+        method=course.method,
         numerical_error=error,
         numerical_error_kind="estimate",
         cautions=(),
@@ -161,7 +165,7 @@ def _money_lasts(found: Evaluation) -> tuple[MoneyLasts, ...]:
     return tuple(MoneyLasts(level, float(dates[index])) for level, index in zip(BANDS, at, strict=True))
 
 
-def _cautions(plan: Plan, figures: Outlook) -> Iterator[Caution]:
+def _cautions(plan: Plan, found: Evaluation, figures: Outlook) -> Iterator[Caution]:
     """Say what a reader of these figures has to know."""
     yield Caution("success_hides_size")
     yield Caution("bands_are_not_paths")
@@ -174,5 +178,9 @@ def _cautions(plan: Plan, figures: Outlook) -> Iterator[Caution]:
         yield Caution("steady_inflation")
     if plan.parameter_uncertainty == "ignored":
         yield Caution("estimates_taken_as_true")
+    if found.course.lost.sum() > NOTICEABLE_LOSS:
+        yield Caution("growth_below_zero", {"total_loss_probability": float(found.course.lost.sum())})
+    if found.course.method == "lattice_fourier" and discrete(plan) and figures.numerical_error > NOTICEABLE:
+        yield Caution("discrete_law_approximated", {"numerical_error": figures.numerical_error})
     if figures.alive_at_horizon is not None and figures.alive_at_horizon > MAY_LIVE:
         yield Caution("life_beyond_horizon", {"alive_at_horizon": figures.alive_at_horizon})

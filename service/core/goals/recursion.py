@@ -5,7 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from service.core.arrays import Numbers
-from service.core.goals.course import Course, Growth, certain_start
+from service.core.goals.course import RATIO, Course, Growth, certain_start
 from service.core.goals.points import Points, Spread, single
 from service.core.goals.quadrature import REACH, Quadrature
 from service.core.goals.wealth import NOTHING, ListedWealth, MixedWealth, Payment
@@ -57,7 +57,7 @@ class Recursion:
     quadrature: Quadrature
     least_target: float | None = None
     averages: bool = True
-    ratio: float = 1.5
+    ratio: float = RATIO
 
     @property
     def last(self) -> int:
@@ -67,6 +67,8 @@ class Recursion:
     def run(self, initial_value: float) -> Course:
         """Follow the plan from date 0 to the horizon. Raises DoesNotFit for too much work."""
         course = Course.over(self.flows.size)
+        course.method, course.error_share = self.growth.method, self.growth.error_share
+        course.error_floor = self.growth.error_floor
         start, value = certain_start(course, self.flows, self.growth, initial_value, self.reported)
         if start == self.last:
             return course
@@ -75,7 +77,7 @@ class Recursion:
         busy = self._busy_dates(start)
         for date in range(start + 1, self.flows.size):
             self._grow(state, date, course)
-            if busy[date]:
+            if busy[date] and state.alive > GONE:
                 self._visit(state, date, course)
             if state.alive <= GONE:
                 self._nothing_from(date, course)
@@ -97,7 +99,7 @@ class Recursion:
         course.lost[date] = state.alive * (1 - survival)
         state.alive *= survival
         state.mean *= factor
-        state.doomed *= factor
+        state.doomed *= factor if state.doomed > 0 else 1.0
         course.expected[date] = state.mean + state.doomed
         if state.held is not None:
             state.payment = state.payment.grown(float(self.growth.certain[date - 1]))
@@ -142,10 +144,8 @@ class Recursion:
         """Report that nothing is left."""
         course.expected[date + 1 :] = 0.0
         for later in self.reported:
-            if later > date or later == self.last:
+            if later > date or later not in course.wealth:
                 course.wealth[later] = ListedWealth(np.zeros(0), np.zeros(0))
-        if date == self.last:
-            course.expected[date] = 0.0
 
     def _settle(self, state: _State, date: int, course: Course, until: int) -> None:
         """Turn what was held and paid into points, before growth goes on from `date` until the next busy date."""

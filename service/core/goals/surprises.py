@@ -9,7 +9,6 @@ from service.core.arrays import Numbers
 from service.core.goals.course import Course
 from service.core.goals.plan import Plan
 from service.core.goals.wealth import MixedWealth, Wealth
-from service.core.returns import law_of_horizon
 
 FARTHEST = 8.0
 STEP = 0.8
@@ -38,8 +37,8 @@ def surprises_of(plan: Plan) -> Surprises:
     for leg in plan.legs:
         sample = float(leg.returns.sample_size or np.inf)
         share = max(share, leg.returns.periods_in_year * horizon / sample)
-        deviation = float(law_of_horizon(leg.returns, 1.0).log_growth().standard_deviation)
-        growth = max(growth, deviation * horizon * float(np.sqrt(leg.returns.periods_in_year / sample)))
+        deviation = float(leg.returns.moments().standard_deviation)
+        growth = max(growth, deviation * horizon * leg.returns.periods_in_year / float(np.sqrt(sample)))
     step = STEP / np.sqrt(1 + share)
     up, down = np.ceil((FARTHEST + min(growth, FARTHEST)) / step), np.ceil(FARTHEST / step)
     values = step * np.arange(-down, up + 1)
@@ -56,6 +55,9 @@ def blended(surprises: Surprises, courses: Sequence[Course]) -> Course:
         lost=surprises.weights @ np.array([course.lost for course in courses]),
         expected=surprises.weights @ np.array([course.expected for course in courses]),
         defect=max(course.defect for course in courses),
+        method=courses[0].method,
+        error_share=courses[0].error_share,
+        error_floor=courses[0].error_floor,
     )
     mixed.wealth = {date: _mixed(surprises, [course.wealth[date] for course in courses]) for date in courses[0].wealth}
     return mixed

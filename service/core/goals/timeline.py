@@ -40,7 +40,7 @@ def timeline(plan: Plan, more_dates: Iterable[float] = ()) -> Timeline:
     horizon = plan.horizon_years or 0.0
     times = [flow.times(horizon) for flow in plan.cash_flows]
     ends = [leg.until_year for leg in plan.legs if leg.until_year is not None and leg.until_year < horizon]
-    whole_years = np.arange(np.floor(horizon - WHOLE) + 1)
+    whole_years = _reportable(plan, np.arange(np.floor(horizon - WHOLE) + 1))
     shock = [] if plan.shock is None else [plan.shock.at_year]
     dates = _distinct(np.concatenate([whole_years, [horizon], *times, ends, shock, np.fromiter(more_dates, float)]))
     opening, closing = np.zeros(dates.size), np.zeros(dates.size)
@@ -51,6 +51,15 @@ def timeline(plan: Plan, more_dates: Iterable[float] = ()) -> Timeline:
         np.add.at(closing if flow.at_end else opening, _positions(dates, at), amounts)
     years = np.append(_positions(dates, whole_years), dates.size - 1)
     return Timeline(dates, opening + closing, closing, _alike(np.diff(dates)), years)
+
+
+def _reportable(plan: Plan, years: Numbers) -> Numbers:
+    """Leave out the years that lie within a period of returns longer than a year."""
+    for leg in plan.legs:
+        if leg.returns.compounding not in leg.returns.model.divides:
+            periods = years * leg.returns.periods_in_year
+            years = years[np.abs(periods - np.rint(periods)) <= WHOLE * leg.returns.periods_in_year]
+    return years
 
 
 def _refuse_beyond_doubles(index: int, amounts: Numbers) -> None:
