@@ -61,7 +61,8 @@ class BesselGrid:
 class BesselLaw(HorizonLaw):
     """log(1 + R) is the sum of n independent location + scale T, T standard Student t; E[R] is infinite.
 
-    The stated error is three times the difference of two grids over thirty standard deviations and 1e-13, that of
+    The stated error is three times the difference of two grids over thirty standard deviations, 1e-13, and for each
+    period the 1e-14 of its transform; that of
     probabilities and of gaps as a share of the growth factor.
     """
 
@@ -79,7 +80,7 @@ class BesselLaw(HorizonLaw):
         self._grid = grids[0]
         self.work = WORK_OF_GRID * OF_A_LAW
         first, second = (grid.relative_gaps(spread * COMPARED_AT) for grid in grids)
-        self.numerical_error = 3 * float(np.abs(first - second).max()) + 1e-13 + 3e-16 * periods
+        self.numerical_error = 3 * float(np.abs(first - second).max()) + 1e-13 + 1e-14 * periods
 
     def mean(self) -> Numbers:
         return INFINITY

@@ -1,5 +1,7 @@
 """Log growth by a normal return, or by a Cornish-Fisher transformation of one."""
 
+from functools import cached_property
+
 import numpy as np
 from scipy.special import ndtr
 
@@ -15,6 +17,8 @@ FARTHEST = 8.6
 NEAR_LOSS = -9.2
 """Where G = 0 lies within so many standard deviations, the logarithm bends the law of X."""
 LEFT_END = -40.0
+FLATTEST = 0.1
+"""Slope below which the density peaks too narrowly for even steps."""
 
 
 class NormalPart(Part):
@@ -35,6 +39,17 @@ class NormalPart(Part):
     ) -> None:
         self.mean, self.deviation, self.expansion, self.weight, self.simple = mean, deviation, expansion, weight, simple
         self._loss_at = inverse(-(1 + mean) / deviation, expansion) if simple else number(-np.inf)
+
+    @cached_property
+    def smooth(self) -> bool:  # type: ignore[override]  # a fact of the parameters here
+        """Whether the expansion is nowhere so flat that the density has a peak."""
+        return bool(self.expansion.slope(np.linspace(-FARTHEST, FARTHEST, 87)).min() > FLATTEST)
+
+    def density(self, x: Numbers) -> Numbers:
+        y = np.expm1(x) if self.simple else x
+        z = inverse((y - self.mean) / self.deviation, self.expansion)
+        density = self.weight * normal_density(z) / (self.deviation * self.expansion.slope(z))
+        return density * np.exp(x) if self.simple else density
 
     @property
     def zero_probability(self) -> Numbers:

@@ -6,8 +6,9 @@ from scipy.special import gammaln, kve
 from service.core.arrays import Numbers
 
 MIXED_FROM = 30.0
-REACH = 9.0
-NODES = 120
+BELOW, ABOVE = -16.0, 9.0
+"""Reach of log W in its deviations: its law falls exponentially below, and faster than any above."""
+NODES = 200
 
 
 def t_transform(degrees_of_freedom: Numbers, u: Numbers) -> Numbers:
@@ -15,7 +16,7 @@ def t_transform(degrees_of_freedom: Numbers, u: Numbers) -> Numbers:
 
     2^(1-v/2)/Gamma(v/2) y^(v/2) K_(v/2)(y) with y = u sqrt(v) (Hurst 1995); from 30 degrees of freedom, where these
     leave the doubles, as the mean of exp(-u^2/(2W)) over W = chi-square_v/v, by the trapezoidal rule in log W. Absolute
-    error 1e-15.
+    error 1e-14.
     """
     if degrees_of_freedom >= MIXED_FROM:
         return _by_mixing(degrees_of_freedom / 2, u)
@@ -28,7 +29,7 @@ def t_transform(degrees_of_freedom: Numbers, u: Numbers) -> Numbers:
 
 def _by_mixing(h: Numbers, u: Numbers) -> Numbers:
     # log W has density exp(-h (e^x - 1 - x)) but for a constant, with deviation 1/sqrt(h)
-    x = np.linspace(-REACH, REACH, NODES) / np.sqrt(h)
+    x = np.linspace(BELOW, ABOVE, NODES) / np.sqrt(h)
     weights = np.exp(-h * (np.expm1(x) - x))
     transform: Numbers = np.exp(-np.multiply.outer(u * u / 2, np.exp(-x))) @ (weights / weights.sum())
     return transform
