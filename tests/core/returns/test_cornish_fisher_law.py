@@ -102,8 +102,15 @@ def test_the_straight_expansion_is_the_normal_law() -> None:
             )
 
 
+def test_bent_log_returns_never_lose_everything() -> None:
+    found = ExponentialCornishFisherLaw(number(MEAN), number(SCALE), BENT)
+    assert found.total_loss_probability() == 0
+    assert found.certain(np.array([-1.0, -0.5])).tolist() == [True, False]
+    assert found.mean() == np.inf
+
+
 def test_certain_and_uncertain_portfolios_side_by_side() -> None:
-    shape = {"skewness": [SKEWNESS] * 2, "excess_kurtosis": [EXCESS] * 2}
+    shape: dict[str, Any] = {"skewness": [SKEWNESS] * 2, "excess_kurtosis": [EXCESS] * 2}
     for compounding, point in (("simple", 0.03), ("continuous", float(np.expm1(0.03)))):
         for periods in (1, 2):
             found = law(

@@ -143,3 +143,9 @@ def test_a_law_has_atoms_or_an_ordering_or_neither() -> None:
     ordering = law("normal", expected_return=0.05, volatility=0.1).ordering()
     assert isinstance(ordering, Ordering)
     assert ordering.kind == "normal"
+
+
+@pytest.mark.usefixtures("_registry")
+def test_moments_do_not_depend_on_compounding_unless_a_model_says_so() -> None:
+    model = returns("normal", expected_return=0.05, volatility=0.1).model
+    assert model.moments_under("continuous") == model.moments()

@@ -27,7 +27,7 @@ def allowed(case: dict[str, Any], figure: str, expected: float) -> float:
 def figure(found: HorizonLaw, name: str, threshold: float, tail: float) -> float:
     """A figure of the law by the name it has in the file."""
     at, a = number(threshold), number(tail)
-    figures = {
+    figures: dict[str, Any] = {
         "shortfall_probability": lambda: found.probability_below(at),
         "order_0": lambda: found.probability_below(at),
         "order_1": lambda: found.gaps(at).order_1,

@@ -5,7 +5,7 @@ import numpy as np
 from service.core.arrays import Numbers
 from service.core.distributions.kernels.student_t import log_t_density
 from service.core.returns.compounding.step import Part, evenly
-from service.core.returns.laws.student_t import t_at, t_at_most
+from service.core.returns.laws.student_t import t_at
 
 LEFT_END = -40.0
 STRAIGHT_BELOW = 0.25
@@ -27,11 +27,6 @@ class StudentTPart(Part):
     def __init__(self, degrees_of_freedom: Numbers, location: Numbers, scale: Numbers) -> None:
         self.v, self.location, self.scale = degrees_of_freedom, location, scale
         self._a = (1 + location) / scale
-
-    @property
-    def zero_probability(self) -> Numbers:
-        """P(G = 0)."""
-        return t_at_most(self.v, -self._a)
 
     def density(self, x: Numbers) -> Numbers:
         growth = np.exp(x) / self.scale

@@ -50,11 +50,6 @@ class Step:
     values: Numbers = field(default_factory=lambda: np.zeros(0))
     masses: Numbers = field(default_factory=lambda: np.zeros(0))
 
-    @property
-    def discrete(self) -> bool:
-        """Whether the components themselves are values."""
-        return any(isinstance(part, ValuesPart) for part in self.parts)
-
     def nodes(self) -> tuple[Numbers, Numbers]:
         """Places and weights of the whole law, for its moments."""
         found = [part.nodes(0.0) for part in self.parts]
