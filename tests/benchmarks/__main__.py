@@ -9,6 +9,7 @@ import statistics
 import sys
 
 from tests.benchmarks.arrays import measure as measure_arrays
+from tests.benchmarks.goals import measure as measure_goals
 from tests.benchmarks.http_peers import Peer, echo_peer, service_peer
 from tests.benchmarks.load import Round, run_round
 from tests.benchmarks.rankings import measure as measure_rankings
@@ -50,7 +51,7 @@ def main() -> int:
         f"of the echo: {by_rate:.3f} by rate (at least {LEAST_RATIO}), {by_cpu:.3f} by the worker's CPU time, "
         f"p99 {tails:.2f} times; {ROUNDS} paired rounds of {REQUESTS} requests on {CONNECTIONS} connections"
     )
-    kept = [by_rate >= LEAST_RATIO, measure_arrays(), measure_rankings()]
+    kept = [by_rate >= LEAST_RATIO, measure_arrays(), measure_rankings(), measure_goals()]
     return 0 if all(kept) else 1
 
 

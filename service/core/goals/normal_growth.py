@@ -1,6 +1,7 @@
 """Growth whose logarithm is normal: between cash flows only its mean and variance matter."""
 
 from dataclasses import dataclass
+from functools import cached_property
 from typing import ClassVar
 
 import numpy as np
@@ -26,7 +27,7 @@ class NormalGrowth:
     variances: Numbers
     error_floor: float = 1e-11
 
-    @property
+    @cached_property
     def random(self) -> Truths:
         """Whether growth from each date to the next is uncertain."""
         return self.variances > CERTAIN**2
@@ -36,12 +37,12 @@ class NormalGrowth:
         """Log growth where it is certain."""
         return self.means
 
-    @property
+    @cached_property
     def log_factors(self) -> Numbers:
         """Logarithm of E[G]."""
         return self.means + self.variances / 2
 
-    @property
+    @cached_property
     def survival(self) -> Numbers:
         """P(G > 0) of each."""
         return np.ones(self.means.size)
@@ -66,7 +67,7 @@ class NormalGrowth:
 
     def trimmed(self, points: Points) -> Points:
         """Leave out the ends whose mass is lost in rounding."""
-        kept = np.flatnonzero(points.masses > NEGLIGIBLE)
+        (kept,) = (points.masses > NEGLIGIBLE).nonzero()
         if kept.size == 0:
             return Points(points.spacing, points.first, np.zeros(0), points.rest)
         first, end = int(kept[0]), int(kept[-1]) + 1

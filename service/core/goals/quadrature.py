@@ -64,9 +64,9 @@ class Quadrature:
             return Block(first, *normal_band(places, spread.deviation / spacing))
 
         key = (0.0, source.rest, source.spacing, shift, spread.deviation, spacing)
-        weights, columns = self._block(key, start, stop, make).rows(start, stop)
+        weights, columns = self._block(key, start, stop, spread.deviation / spacing, make).rows(start, stop)
         self.work.add(weights.size)
-        first = int(columns.min())
+        first = int(columns[0, 0])  # places rise
         products = (weights * source.masses[:, np.newaxis]).ravel()
         masses: Numbers = np.asarray(np.bincount((columns - first).ravel(), products), np.float64)
         return Points(spacing, first, masses, 1.0)
@@ -91,12 +91,13 @@ class Quadrature:
             return Block(first, density, columns)
 
         key = (1.0, 0.0, source.spacing, shift, spread.deviation, spacing)
-        weights, columns = self._block(key, start, stop, make).rows(start, stop)
+        weights, columns = self._block(key, start, stop, spread.deviation / source.spacing, make).rows(start, stop)
         self.work.add(weights.size)
         return Points(spacing, start, _gathered(weights, columns, source), rest)
 
     def _uneven(self, source: Points, shift: float, deviation: float, spacing: float, start: int, stop: int) -> Numbers:
         """Sum the density directly, where neither the points nor their targets are even in y."""
+        self.work.block(stop - start, 2)
         z = spacing * np.arange(start, stop)
         y = np.logaddexp(0.0, z)
         centres, reach = source.log_wealth() + shift, REACH * deviation
@@ -110,15 +111,20 @@ class Quadrature:
         density *= spacing / (deviation * np.sqrt(2 * np.pi)) * np.exp(z - y)
         return density
 
-    def _block(self, key: tuple[float, ...], start: int, stop: int, make: Callable[[int, int], Block]) -> Block:
-        """Give a block that covers these rows: kept from a step before, or made with some room on either side."""
+    def _block(
+        self, key: tuple[float, ...], start: int, stop: int, deviation: float, make: Callable[[int, int], Block]
+    ) -> Block:
+        """Give a block that covers these rows: kept from a step before, or made with some room on either side.
+
+        `deviation`: of the normal densities, in steps of the columns.
+        """
         block = self._blocks.get(key)
         if block is None or not block.covers(start, stop):
             room = 8 + (stop - start) // 6
             if len(self._blocks) >= MOST_BLOCKS:
                 self._blocks.clear()
+            self.work.block(stop - start + 2 * room, 2 * int(REACH * deviation) + 2)
             block = self._blocks[key] = make(start - room, stop + room)
-            self.work.add(4 * block.weights.size)
         return block
 
 
@@ -138,9 +144,10 @@ def normal_band(places: Numbers, deviation: float) -> tuple[Numbers, Indices]:
 def _paid_range(centres: Numbers, reach: float, spacing: float, lowest: float) -> tuple[int, int]:
     """Lattice range of z that the mixture reaches, from `lowest` on; y = log(1 + e^z)."""
     top, bottom = float(centres[-1]) + reach, float(centres[0]) - reach
-    if top <= np.exp(lowest):
+    edge = float(np.logaddexp(0.0, lowest))
+    if top <= edge:
         return 0, 0
-    least = max(_above_unit(bottom), lowest) if bottom > np.exp(lowest) else lowest
+    least = _above_unit(bottom) if bottom > edge else lowest
     return int(np.floor(least / spacing)), int(np.ceil(_above_unit(top) / spacing)) + 1
 
 

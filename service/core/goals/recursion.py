@@ -111,16 +111,16 @@ class Recursion:
         if held is None:
             held = self.growth.spread(state.points, state.shift, state.since, date)
             state.alive_held, state.mean_held = state.alive, state.mean
-        before = MixedWealth.of(held, state.alive_held, state.payment)
+        before = state.payment
         flow = float(self.flows[date])
         if flow != 0:
-            state.held, state.payment = held, state.payment.then(flow)
+            state.held, state.payment = held, before.then(flow)
             self._pay(state, held, date, course)
         if date == self.last:
-            before = MixedWealth.of(held, state.alive_held, state.payment)
+            before = state.payment
             course.expected[date] = state.mean + state.doomed
         if date in self.reported:
-            course.wealth[date] = before
+            course.wealth[date] = MixedWealth.of(held, state.alive_held, before)
 
     def _pay(self, state: _State, held: Spread, date: int, course: Course) -> None:
         """Find who can pay, and E[V] after: e^m (E[W] - t P + E[max(t - W, 0)] + (t + amount) P(W >= t)).

@@ -18,6 +18,8 @@ UNNOTICED = 1e-11
 COINCIDENCE = 1e-12
 """Cumulative probabilities of single outcomes this close to a level are equal to it."""
 ROUNDS = 60
+TOGETHER = 16
+"""Quantiles searched at a time."""
 LARGEST_LOG = 709.0
 """exp of more leaves the doubles."""
 
@@ -181,27 +183,39 @@ class MixedWealth(Wealth):
         before = np.zeros(probabilities.size)
         if total > 0:
             cumulative = np.concatenate([[0.0], np.cumsum(self.masses)])
-            for index in np.flatnonzero(beyond_nothing > UNNOTICED):
-                before[index] = self._quantile(float(beyond_nothing[index]), cumulative)
+            some = np.flatnonzero(beyond_nothing > UNNOTICED)
+            for at in range(0, some.size, TOGETHER):
+                part = some[at : at + TOGETHER]
+                before[part] = self._quantiles(beyond_nothing[part], cumulative)
         return self.payment.after(before)
 
-    def _quantile(self, mass: float, cumulative: Numbers) -> float:
+    def _quantiles(self, mass: Numbers, cumulative: Numbers) -> Numbers:
         """exp(y) with so much mass below: Newton on the mixture's distribution function, bracketed."""
         centres, s = self.centres, self.deviation
-        middles = (cumulative[1:] + cumulative[:-1]) / 2
-        y = float(np.interp(mass, middles, centres))
+        y = np.interp(mass, (cumulative[1:] + cumulative[:-1]) / 2, centres)
         if centres.size == 1:
-            y += s * float(ndtri(min(mass / cumulative[-1], 1.0)))
-        low, high = float(centres[0]) - 40 * s, float(centres[-1]) + 40 * s
+            y = y + s * ndtri(np.minimum(mass / cumulative[-1], 1.0))
+        low, high = np.full(y.size, centres[0] - 40 * s), np.full(y.size, centres[-1] + 40 * s)
+        found = np.zeros(y.size, np.bool_)
         for _ in range(ROUNDS):
-            left, right = np.searchsorted(centres, (y - NEAR * s, y + NEAR * s))
-            d = (y - centres[left:right]) / s
-            excess = cumulative[left] + float(self.masses[left:right] @ ndtr(d)) - mass
-            density = float(self.masses[left:right] @ np.exp(-d * d / 2)) / (s * np.sqrt(2 * np.pi))
-            low, high = (low, y) if excess > 0 else (y, high)
-            newton = y - excess / density if density > 1e-200 else np.inf
-            new = newton if low < newton < high else (low + high) / 2
-            moved, y = abs(new - y), new
-            if moved < 1e-11:
+            below, density = self._near(y, cumulative)
+            over = below > mass
+            low, high = np.where(over, low, y), np.where(over, y, high)
+            newton = y - (below - mass) / np.maximum(density, 1e-200)
+            new = np.where((newton >= low) & (newton <= high), newton, (low + high) / 2)
+            moved = np.where(found, 0.0, new - y)
+            y = y + moved
+            found = np.abs(moved) < 1e-11
+            if found.all():
                 break
-        return float(np.exp(min(y, LARGEST_LOG)))
+        return np.exp(np.minimum(y, LARGEST_LOG))
+
+    def _near(self, y: Numbers, cumulative: Numbers) -> tuple[Numbers, Numbers]:
+        """Mass below each y, and its density there, from the centres near it; those far below count whole."""
+        s = self.deviation
+        left, right = np.searchsorted(self.centres, [y - NEAR * s, y + NEAR * s])
+        index = left[:, np.newaxis] + np.arange(max(int((right - left).max()), 1))
+        masses = np.where(index < right[:, np.newaxis], self.masses.take(index, mode="clip"), 0.0)
+        d = (y[:, np.newaxis] - self.centres.take(index, mode="clip")) / s
+        below = cumulative[left] + np.vecdot(masses, ndtr(d))
+        return below, np.vecdot(masses, np.exp(-d * d / 2)) / (s * np.sqrt(2 * np.pi))
