@@ -9,7 +9,7 @@ from service.core.arrays import Numbers, Truths
 from service.core.goals.points import Points, Spread
 from service.core.goals.wealth import PAID, ListedWealth, Wealth
 
-RATIO = 1.5
+RATIO = 1.75
 """Points in one deviation."""
 COARSER = 1.25
 """The run that shows the error has so much fewer points."""

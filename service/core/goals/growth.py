@@ -91,7 +91,7 @@ def _misfits(plan: Plan, dates: Timeline, at: int) -> Iterator[Refusal]:
     returns, horizon = plan.legs[index].returns, plan.horizon_years or 0.0
     a_year = returns.periods_in_year
     detail = (
-        f"A period has {1 / a_year:.6g} years, and the law of {returns.model.name} returns does not divide; "
+        f"A period lasts {1 / a_year:.6g} of a year, and the law of {returns.model.name} returns does not divide; "
         "every cash flow, the horizon, the ends of a glide path and a shock must come after whole periods. Give "
         "returns estimated for the shortest time between flows, or a law that divides: lognormal, or normal with "
         "continuous compounding."

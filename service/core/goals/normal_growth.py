@@ -25,7 +25,13 @@ class NormalGrowth:
 
     means: Numbers
     variances: Numbers
-    error_floor: float = 1e-11
+
+    @cached_property
+    def error_floor(self) -> float:
+        """Rounding of places whose distance is a small part of them, measured, with room."""
+        random = self.random
+        least = np.sqrt(self.variances[random].min(initial=1.0))
+        return 1e-11 + 1e-16 * float(np.sqrt(random.sum()) / least)
 
     @cached_property
     def random(self) -> Truths:

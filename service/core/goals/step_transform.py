@@ -80,8 +80,10 @@ class StepTransform:
         half = cells.size // 2
         wrapped = np.zeros(length)
         np.add.at(wrapped, np.arange(-half, half + 1) % length, cells)
-        found: Complexes = np.asarray(rfft(wrapped), np.complex128)[:count]
-        return found / np.sinc(np.arange(float(count)) / length)
+        found = np.empty(count, np.complex128)
+        found[:] = rfft(wrapped)[:count]
+        found /= np.sinc(np.arange(float(count)) / length)
+        return found
 
 
 def _rest(law: StepLaw, centre: float, scale: float, reach: float) -> float:
@@ -101,5 +103,5 @@ def outer_transform(places: Numbers, masses: Numbers, step: float, count: int) -
     """Sum of masses exp(-i k places) for k = 0, step, 2 step, ...: coarse and fine frequencies multiplied out."""
     fine = int(np.ceil(np.sqrt(count)))
     coarse = np.exp(-1j * fine * step * np.multiply.outer(np.arange(-(-count // fine)), places))
-    found: Complexes = (coarse * masses) @ np.exp(-1j * step * np.multiply.outer(places, np.arange(fine)))
-    return found.ravel()[:count]
+    found = (coarse * masses) @ np.exp(-1j * step * np.multiply.outer(places, np.arange(fine)))
+    return np.asarray(found.ravel()[:count], np.complex128)

@@ -6,6 +6,8 @@ from service.core.errors import DoesNotFit, Refusal
 
 MOST_WORK = 1.2e9
 """Products of a weight and a mass in one question: about two seconds."""
+LARGEST_BLOCK = 1.5e7
+"""Weights of one step that are held at a time."""
 EACH_STEP = 20_000
 """What a step costs beside its products, in products."""
 
@@ -19,6 +21,11 @@ class Work:
     def step(self) -> None:
         """Count what a step costs beside its products. Raises DoesNotFit."""
         self.add(EACH_STEP)
+
+    def block(self, rows: int, columns: int) -> None:
+        """Count a block of weights before it is made. Raises DoesNotFit, also where it would fill the memory."""
+        products = 4.0 * rows * columns
+        self.add(products if products <= 4 * LARGEST_BLOCK else MOST_WORK + products)
 
     def add(self, products: float) -> None:
         """Count what is about to be computed. Raises DoesNotFit."""
