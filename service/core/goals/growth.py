@@ -42,7 +42,9 @@ def growth_of(plan: Plan, dates: Timeline, quadrature: Quadrature, surprise: flo
     laws, kinds, periods = step_laws(plan, dates, surprise)
     steps = max(int(periods.sum()), 1)
     transforms = tuple(StepTransform.of(law, steps) for law in laws)
-    h = coarser * BAND * np.pi / max(transform.highest for transform in transforms)
+    # one lattice for every surprise, so that what follows from each can be mixed
+    expected = transforms if surprise == 0 else [StepTransform.of(law, steps) for law in step_laws(plan, dates)[0]]
+    h = coarser * BAND * np.pi / (max(transform.highest for transform in expected) or 1.0)
     return LatticeGrowth(transforms, kinds, periods, drift, quadrature, float(h))
 
 
@@ -91,8 +93,8 @@ def _misfits(plan: Plan, dates: Timeline, at: int) -> Iterator[Refusal]:
     returns, horizon = plan.legs[index].returns, plan.horizon_years or 0.0
     a_year = returns.periods_in_year
     detail = (
-        f"A period lasts {1 / a_year:.6g} of a year, and the law of {returns.model.name} returns does not divide; "
-        "every cash flow, the horizon, the ends of a glide path and a shock must come after whole periods. Give "
+        f"Periods in a year: {a_year:.6g}. The law of {returns.model.name} returns does not divide, so every "
+        "cash flow, the horizon, the ends of a glide path and a shock must come after whole periods. Give "
         "returns estimated for the shortest time between flows, or a law that divides: lognormal, or normal with "
         "continuous compounding."
     )

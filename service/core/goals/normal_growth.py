@@ -31,7 +31,7 @@ class NormalGrowth:
         """Rounding of places whose distance is a small part of them, measured, with room."""
         random = self.random
         least = np.sqrt(self.variances[random].min(initial=1.0))
-        return 1e-11 + 1e-16 * float(np.sqrt(random.sum()) / least)
+        return max(1e-11, 1e-16 * float(np.sqrt(random.sum()) / least))
 
     @cached_property
     def random(self) -> Truths:

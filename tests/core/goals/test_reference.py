@@ -154,3 +154,11 @@ def test_the_example_outlook() -> None:
     assert found.frequencies["depletion_probability"].bound == "exactly"
     assert all(np.isnan(lasts.years) for lasts in found.money_lasts)
     assert found.numerical_error == 1e-11
+
+
+@pytest.mark.parametrize("volatility", [1e-7, 1e-6, 1e-5])
+def test_what_is_all_but_certain_is_within_the_stated_error(volatility: float) -> None:
+    flows = [CashFlow(-600, "month"), CashFlow(700, "quarter", 0.1)]
+    found = outlook(plan(100_000, flows, 20, 0.0, returns(expected_return=0.05, volatility=volatility)))
+    assert found.depletion_probability <= found.numerical_error  # without randomness money is left
+    assert found.numerical_error < 2e-7
