@@ -8,7 +8,8 @@ from service.core.returns.law import HorizonLaw
 from service.core.returns.work import too_much_work
 
 MOST_PERIODS = 100_000
-NEVER_ALIVE = 1e-13
+NEVER_ALIVE = 1e-11
+"""Below it the window, which leaves out some 1e-12, would be empty."""
 
 
 def compounded(step: Step, periods: int) -> HorizonLaw:

@@ -68,13 +68,14 @@ def band_of(step: Step, periods: int, window: Window) -> Band:
 def lattice_band(step: Step, periods: int, window: Window) -> Band | None:
     """Find the band from transforms on ever finer lattices; None where the finest still leaves something out."""
     period = SLACK * window.width
+    atoms = step.masses.sum()
     length = SHORTEST_LATTICE
     while length <= LONGEST_LATTICE:
         sizes = np.abs(_lattice_transform(step, window, period, length)[0][: length // 2])
         if sizes[-length // 16 :].max() < UNFOLDED:
             frequency = 2 * np.pi / period
             rest = np.flatnonzero(sizes >= UNFOLDED)[-1] + 1
-            highest = np.flatnonzero(sizes**periods >= RESOLVED)[-1] + 1
+            highest = np.flatnonzero((sizes + atoms) ** periods - atoms**periods >= RESOLVED)[-1] + 1
             return Band(float(highest * frequency), (float(rest * frequency),), resolved=True, lattice=True)
         length *= 4
     return None
