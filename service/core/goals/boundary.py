@@ -14,7 +14,8 @@ SATURATED = 1e-12
 """Nearer to 0 or 1 a probability says nothing of how far it is."""
 STEEP = 1e-3
 """Within so much on the normal scale the interpolation is trusted to the end."""
-MOST_TRIALS = 200
+PATIENCE = 50
+"""After so many trials a bracket that does not shrink is halved, however close."""
 FARTHEST = 1e12
 
 Probability = Callable[[float], float]
@@ -57,9 +58,7 @@ def boundary(probability: Probability, wanted: float, good: Boundary, bad: float
     or, where P jumps, the value that reaches it beside the jump.
     """
     search = _Search(wanted, good, bad)
-    for _ in range(MOST_TRIALS):
-        if search.narrow:
-            break
+    while not search.narrow:
         u = search.next()
         reached = probability(search.value(u))
         if abs(reached - wanted) <= CLOSE:
@@ -111,7 +110,7 @@ class _Search:
         """Give the next place to try, strictly within the bracket."""
         low, high = sorted((self.good_u, self.bad_u))
         stalled = len(self.widths) > 3 and self.widths[-1] > 0.5 * self.widths[-4]
-        steep = bool(self.points) and abs(self.points[0][1]) < STEEP and len(self.widths) < MOST_TRIALS // 4
+        steep = bool(self.points) and abs(self.points[0][1]) < STEEP and len(self.widths) < PATIENCE
         if steep or not stalled:
             for count in (3, 2):
                 u = interpolated(self.points[:count]) if len(self.points) >= count else np.nan

@@ -102,7 +102,8 @@ def certain_start(
     Gives that date and the wealth then; the last date, and the wealth or 0, where there is none.
     """
     value, alive, last = float(initial_value), True, flows.size - 1
-    for date in range(last + 1):
+    date = 0
+    while True:
         before, flow = value, float(flows[date])
         if alive and flow < 0 and value + flow < PAID * flow:
             alive, course.unpaid[date] = False, 1.0
@@ -118,4 +119,4 @@ def certain_start(
             alive, course.lost[date + 1] = False, 1.0
             value = 0.0
         value *= float(np.exp(growth.certain[date]))
-    raise AssertionError("the last date returns")
+        date += 1

@@ -75,8 +75,8 @@ class LatticeGrowth:
 
     @property
     def error_floor(self) -> float:
-        """Three times the probability beyond the lattice, over the whole plan."""
-        return 3 * max(transform.tail for transform in self.transforms)
+        """Rounding, or three times the probability beyond the lattice, over the whole plan."""
+        return max(1e-11, *(3 * transform.tail for transform in self.transforms))
 
     def drift(self, start: int, end: int) -> float:
         """Give the centre of the log growth between two dates."""

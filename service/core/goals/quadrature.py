@@ -161,8 +161,8 @@ def _gathered(weights: Numbers, columns: Indices, source: Points) -> Numbers:
     low, high = int(columns[0, 0]), int(columns[-1, -1]) + 1
     masses = np.zeros(high - low)
     start, stop = max(source.first, low), min(source.first + source.masses.size, high)
-    if stop > start:
-        masses[start - low : stop - low] = source.masses[start - source.first : stop - source.first]
+    shared = max(stop - start, 0)
+    masses[start - low :][:shared] = source.masses[start - source.first :][:shared]
     found = np.empty(len(weights))
     for at in range(0, len(weights), ROWS):
         rows = slice(at, at + ROWS)

@@ -171,8 +171,9 @@ def _rounded(
         steps = answer.size / to
         nearest = np.rint(steps)
         whole = nearest if abs(steps - nearest) < 1e-9 else np.floor(steps) if unknown.falls else np.ceil(steps)
-        for size in (whole * to, max(whole - 1 if unknown.falls else whole + 1, 0.0) * to):
-            reached = chance(unknown.filled(plan, float(size)), solvency, work)
-            if reached >= wanted - TIE:
-                break
-        yield Rounded(to, unknown.sign * float(size), reached)
+        size = float(whole * to)
+        reached = chance(unknown.filled(plan, size), solvency, work)
+        if reached < wanted - TIE:
+            size = max(size - to, 0.0) if unknown.falls else size + to
+            reached = chance(unknown.filled(plan, size), solvency, work)
+        yield Rounded(to, unknown.sign * size, reached)

@@ -7,8 +7,8 @@ import numpy as np
 from service.core.arrays import INFINITY, Numbers, number
 from service.core.returns import HorizonLaw, Returns, law_of_horizon
 
-LOWEST = -60.0
-"""Growth to less than e^-60 is as good as a total loss."""
+LOWEST = -36.0
+"""Growth to less than e^-36 is told from a total loss by no double, and is as good as one."""
 
 
 @dataclass(frozen=True)
@@ -38,7 +38,7 @@ class StepLaw:
         return self.deviation == 0
 
     def log_quantiles(self, probabilities: Numbers) -> Numbers:
-        """Give quantiles of log G, given G > 0, at least -60."""
+        """Give quantiles of log G, given G > 0, at least -36."""
         lost = 1 - self.survival
         found = self.law.quantile(lost + (1 - lost) * probabilities) + self.surprise
         return np.log1p(np.maximum(found, np.expm1(LOWEST)))

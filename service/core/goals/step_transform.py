@@ -13,15 +13,19 @@ from scipy.fft import next_fast_len, rfft
 from service.core.arrays import Numbers
 from service.core.goals.step_law import StepLaw
 
-AT_REST = 1e-8
+AT_REST = 1e-9
 """A characteristic function below this does not matter."""
+ROOM = 1.2
+"""Frequencies are kept so much farther, as their end is tapered."""
 FINEST = 60.0
 """Frequencies are followed to this many over the deviation, for laws whose function never comes to rest."""
-ATOMS_TO = 24.0
+ATOMS_TO = 28.8
 """The same for laws of single values, which are smooth only after many steps."""
 FARTHEST = 500.0
 """Reach of one step, in its scales, that is followed: farther tails are cut where they hold more than 1e-11."""
-TAILS = (1e-11, 1e-10, 1e-9, 1e-8, 1e-7, 1e-6, 1e-5)
+TAILS = (1e-12, 1e-11, 1e-10, 1e-9, 1e-8, 1e-7, 1e-6, 1e-5)
+LEAST_TAIL = 1e-15
+"""Nearer to 1 there are no doubles."""
 Complexes = npt.NDArray[np.complex128]
 
 
@@ -51,12 +55,11 @@ class StepTransform:
             reach = float(np.abs(logs - centre).max())
             return cls(law, centre, scale, reach, TAILS[0], ATOMS_TO / scale)
         scale = float(high - low) / 1.35 or law.deviation
-        for tail in TAILS:
-            ends = law.log_quantiles(np.array([tail / steps, 1 - tail / steps]))
-            reach = float(np.abs(ends - centre).max())
-            if reach / scale < FARTHEST:
-                break
-        return cls(law, float(centre), scale, reach, tail, _rest(law, float(centre), scale, reach))
+        beyond = np.maximum(np.array(TAILS) / steps, LEAST_TAIL)
+        reaches = np.maximum(centre - law.log_quantiles(beyond), law.log_quantiles(1 - beyond) - centre)
+        at = int(np.argmin(np.append(reaches[:-1] > FARTHEST * scale, False)))
+        reach = float(reaches[at])
+        return cls(law, float(centre), scale, reach, TAILS[at], _rest(law, float(centre), scale, reach))
 
     def cells(self, spacing: float) -> Numbers:
         """Probabilities of the cells around the lattice points within reach; the ends take the tails."""
@@ -87,7 +90,7 @@ class StepTransform:
 
 
 def _rest(law: StepLaw, centre: float, scale: float, reach: float) -> float:
-    """Find the frequency from which on the characteristic function is below 1e-8, at most 60 over the scale."""
+    """Find the frequency from which on the characteristic function is below 1e-9, at most 60 over the scale."""
     finest = FINEST / scale
     trial = StepTransform(law, centre, scale, reach, 0.0, finest)
     spacing = np.pi / finest / 2
@@ -96,7 +99,7 @@ def _rest(law: StepLaw, centre: float, scale: float, reach: float) -> float:
     sizes = np.abs(trial.transform(spacing, length, count))
     above = np.flatnonzero(sizes > AT_REST)
     k = 2 * np.pi / (length * spacing) * float(above[-1] + 1)
-    return float(np.clip(k, 4 / scale, finest))
+    return float(np.clip(ROOM * k, 4 / scale, finest))
 
 
 def outer_transform(places: Numbers, masses: Numbers, step: float, count: int) -> Complexes:

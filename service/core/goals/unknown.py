@@ -29,7 +29,8 @@ class Unknown:
         if self.solve_for == "initial_value":
             return replace(plan, initial_value=size)
         if self.solve_for == "horizon_years":
-            return replace(plan, horizon_years=size)
+            shock = plan.shock if plan.shock and plan.shock.at_year < size else None
+            return replace(plan, horizon_years=size, shock=shock)
         if self.solve_for == "target":
             return replace(plan, targets=(size,))
         flow = replace(plan.cash_flows[self.flow], amount=self.sign * size)

@@ -181,12 +181,11 @@ class MixedWealth(Wealth):
         total = float(self.masses.sum())
         beyond_nothing = probabilities - (1 - total)
         before = np.zeros(probabilities.size)
-        if total > 0:
-            cumulative = np.concatenate([[0.0], np.cumsum(self.masses)])
-            some = np.flatnonzero(beyond_nothing > UNNOTICED)
-            for at in range(0, some.size, TOGETHER):
-                part = some[at : at + TOGETHER]
-                before[part] = self._quantiles(beyond_nothing[part], cumulative)
+        cumulative = np.concatenate([[0.0], np.cumsum(self.masses)])
+        some = np.flatnonzero(beyond_nothing > UNNOTICED)
+        for at in range(0, some.size, TOGETHER):
+            part = some[at : at + TOGETHER]
+            before[part] = self._quantiles(beyond_nothing[part], cumulative)
         return self.payment.after(before)
 
     def _quantiles(self, mass: Numbers, cumulative: Numbers) -> Numbers:
@@ -197,7 +196,9 @@ class MixedWealth(Wealth):
             y = y + s * ndtri(np.minimum(mass / cumulative[-1], 1.0))
         low, high = np.full(y.size, centres[0] - 40 * s), np.full(y.size, centres[-1] + 40 * s)
         found = np.zeros(y.size, np.bool_)
-        for _ in range(ROUNDS):
+        rounds = 0
+        while rounds < ROUNDS and not found.all():
+            rounds += 1
             below, density = self._near(y, cumulative)
             over = below > mass
             low, high = np.where(over, low, y), np.where(over, y, high)
@@ -206,8 +207,6 @@ class MixedWealth(Wealth):
             moved = np.where(found, 0.0, new - y)
             y = y + moved
             found = np.abs(moved) < 1e-11
-            if found.all():
-                break
         return np.exp(np.minimum(y, LARGEST_LOG))
 
     def _near(self, y: Numbers, cumulative: Numbers) -> tuple[Numbers, Numbers]:

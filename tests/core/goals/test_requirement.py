@@ -11,7 +11,7 @@ from scipy.special import ndtri
 
 from service.core.errors import DoesNotFit
 from service.core.goals import CashFlow, Leg, Lifetime, Plan, Requirement, Shock, TableLife, outlook, requirement
-from service.core.goals.boundary import Boundary, boundary, interpolated, least_reaching
+from service.core.goals.boundary import Boundary, _Search, boundary, interpolated, least_reaching
 from tests.core.goals.build import log_normal, plan, returns
 
 SAVING = (CashFlow(300, "month"),)
@@ -264,9 +264,24 @@ def test_the_boundary_search_narrows_to_a_jump_and_bisects_where_nothing_is_told
     assert found is not None
     assert found.value == pytest.approx(3.3, rel=1e-13)
     assert len(tried) < 70
-    assert least_reaching(lambda value: 0.2, 0.5, Boundary(0.0, 0.2), 1.0) is None
+    assert least_reaching(lambda _: 0.2, 0.5, Boundary(0.0, 0.2), 1.0) is None
+    # steep below and flat above: the secant creeps, so the bracket is halved
+    creeping = boundary(lambda value: 0.5 + 1e-4 * (value - 1) ** 9, 0.5 + 1e-9, Boundary(5.0, 0.9), 0.0)
+    assert creeping.value == pytest.approx(1 + 1e-5 ** (1 / 9), rel=1e-2)
     # a staircase: interpolation stalls, bisection goes on
     stairs = boundary(lambda value: 0.3 + 0.1 * np.floor(value), 0.55, Boundary(9.0, 1.2), 0.0)
     assert stairs.value == pytest.approx(3, rel=1e-12)
+    stuck = _Search(0.5, Boundary(4.0, 0.9), 1.0)
+    stuck.learn(np.log(3.0), 0.8)
+    assert stuck.next() != pytest.approx(np.log(3) / 2)
+    stuck.widths.extend([stuck.widths[-1]] * 3)
+    assert stuck.next() == pytest.approx(np.log(3) / 2)
     assert np.isnan(interpolated([(1.0, 0.5), (2.0, 0.5)]))
     assert interpolated([(1.0, 0.5), (2.0, -0.5)]) == pytest.approx(1.5)
+
+
+def test_a_value_that_rounding_would_leave_short_is_raised_a_step() -> None:
+    factor = np.exp(-(0.2 + 0.4 * ndtri(0.1)))
+    found = requirement(plan(None, (), 4, (100 + 6e-10) / factor, log_normal(0.05, 0.2)), "initial_value", 0.9)
+    assert found.value == pytest.approx(100, abs=2e-9)
+    assert [row.value for row in found.rounded] == [101, 110, 200]
