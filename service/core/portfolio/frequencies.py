@@ -26,14 +26,15 @@ class Frequencies:
 def frequencies(probability: Numbers, certain: Truths, numerical_error: float) -> Frequencies:
     """Choose the smallest of 100, 1,000, ... 1,000,000 in which the rounded count is right within a tenth.
 
-    Where none is, or the figure is lost in the numerical error: "at_most" so many in a million, at least 1 (near
-    certainty "at_least", never all). 0 and 1 are "exactly" only where `certain`. Arrays of one shape.
+    Where none is, or the figure is lost in the numerical error: "at_most" so many in a million, the error added, at
+    least 1 (near certainty "at_least", never all). 0 and 1 are "exactly" only where `certain`. Arrays of one shape.
     """
     p = np.asarray(probability, np.float64)
     smaller = np.minimum(p, 1 - p)
     largest = SIZES[-1]
     resolved = smaller >= RESOLVED * numerical_error
-    rare, common = np.maximum(np.ceil(p * largest), 1), np.minimum(np.floor(p * largest), largest - 1)
+    rare = np.clip(np.ceil((p + numerical_error) * largest), 1, largest)
+    common = np.clip(np.floor((p - numerical_error) * largest), 0, largest - 1)
     count = np.where(p < 0.5, rare, common)
     out_of = np.full(p.shape, largest)
     bound = np.where(p < 0.5, "at_most", "at_least")

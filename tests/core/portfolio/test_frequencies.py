@@ -42,9 +42,11 @@ def test_examples(probability: float, certain: bool, expected: tuple[int, int, s
     assert of(probability, certain) == expected
 
 
-def test_a_figure_lost_in_the_numerical_error_is_a_bound() -> None:
-    assert of(0.004, error=1e-3) == (4000, 1_000_000, "at_most")
-    assert of(0.996, error=1e-3) == (996_000, 1_000_000, "at_least")
+def test_a_figure_lost_in_the_numerical_error_is_a_bound_that_counts_the_error() -> None:
+    assert of(0.00390625, error=2**-10) == (4883, 1_000_000, "at_most")
+    assert of(1 - 0.00390625, error=2**-10) == (995_117, 1_000_000, "at_least")
+    assert of(0.25, error=2.0) == (1_000_000, 1_000_000, "at_most")
+    assert of(0.75, error=2.0) == (0, 1_000_000, "at_least")
 
 
 @given(st.floats(0, 1), st.booleans())
