@@ -105,6 +105,8 @@ class LatticeGrowth:
         if points.rest > 0 or points.spacing != self.h:
             points = self.quadrature.after_inflow(Spread(points, shift, smoothed), 0.0, self.h)
             shift, removed = 0.0, 2
+        if points.masses.size == 0:
+            return Spread(points, shift, smoothed)
         half = int(np.ceil(self._reach(start, end) / self.h)) + PADDING
         length = few_lengths(points.masses.size + 2 * half)
         self.quadrature.work.add(15 * length)

@@ -58,6 +58,8 @@ class Quadrature:
         """Give the points after an inflow of one unit: p'_j = h phi-mixture(h j)."""
         source, shift = spread.points, round(spread.shift - log_unit, DIGITS)
         start, stop = source.first, source.first + source.masses.size
+        if stop == start:
+            return Points(spacing, 0, np.zeros(0), 1.0)
 
         def make(first: int, last: int) -> Block:
             places = (source.log_wealth_from(first, last - first) + shift) / spacing
@@ -143,10 +145,10 @@ def normal_band(places: Numbers, deviation: float) -> tuple[Numbers, Indices]:
 
 def _paid_range(centres: Numbers, reach: float, spacing: float, lowest: float) -> tuple[int, int]:
     """Lattice range of z that the mixture reaches, from `lowest` on; y = log(1 + e^z)."""
-    top, bottom = float(centres[-1]) + reach, float(centres[0]) - reach
     edge = float(np.logaddexp(0.0, lowest))
-    if top <= edge:
+    if not centres.size or centres[-1] + reach <= edge:
         return 0, 0
+    top, bottom = float(centres[-1]) + reach, float(centres[0]) - reach
     least = _above_unit(bottom) if bottom > edge else lowest
     return int(np.floor(least / spacing)), int(np.ceil(_above_unit(top) / spacing)) + 1
 

@@ -173,8 +173,6 @@ class Recursion:
         if payment.threshold > 0 and self.averages:
             points = self._set_aside(state, points, lowest)
         state.points = self.growth.trimmed(points)
-        if state.points.masses.size == 0:
-            state.alive = 0.0
 
     def _set_aside(self, state: _State, points: Points, lowest: float) -> Points:
         """Leave out the points below `lowest`, and keep their part of E[V] aside."""

@@ -162,6 +162,19 @@ def test_the_gap_is_the_integral_of_the_chance() -> None:
         assert wealth.gap(800.0) == pytest.approx(integral, rel=1e-7)
 
 
+@pytest.mark.parametrize("deviation", [0.01, 0.001, 1e-4])
+def test_what_cannot_survive_the_next_withdrawal_is_depleted_then(deviation: float) -> None:
+    # without volatility the money is gone after 20 of 26 withdrawals
+    figures = found(1000.0, np.full(26, -50.0), 0.0, deviation, 10.0)
+    assert figures.depletion_probability == pytest.approx(1, abs=1e-11)
+    # what is left then just pays the twentieth, or just fails to
+    assert figures.by_year.depletion_probability[20] == pytest.approx(0.5, abs=0.01)
+    jump = found(1000.0, np.array([0.0, -500, -500_000, 5.0, 0.0]), 0.0, deviation, 10.0)
+    assert jump.depletion_probability == pytest.approx(1, abs=1e-13)
+    assert jump.by_year.depletion_probability == pytest.approx([0, 0, 0, 1, 1, 1], abs=1e-13)
+    assert jump.by_year.expected_wealth[2] == pytest.approx(500 * np.exp(deviation**2 / 2), rel=1e-2)
+
+
 def test_sixty_years_of_alternating_months() -> None:
     months = np.where(np.arange(720) % 2 == 0, 900.0, -1000.0)
     figures = outlook(plan(50_000, at_steps(months, 12), 60, 10_000, log_normal(0.05, 0.15)))
