@@ -24,6 +24,7 @@ ATOMS_TO = 28.8
 FARTHEST = 500.0
 """Reach of one step, in its scales, that is followed: farther tails are cut where they hold more than 1e-11."""
 TAILS = (1e-12, 1e-11, 1e-10, 1e-9, 1e-8, 1e-7, 1e-6, 1e-5)
+SINGLE = 1e-12
 LEAST_TAIL = 1e-15
 """Nearer to 1 there are no doubles."""
 Complexes = npt.NDArray[np.complex128]
@@ -51,9 +52,10 @@ class StepTransform:
         if atoms is not None:
             logs, masses = atoms
             centre = float(masses @ logs / masses.sum())
-            scale = float(np.sqrt(masses @ np.square(logs - centre) / masses.sum())) or 1.0
+            scale = float(np.sqrt(masses @ np.square(logs - centre) / masses.sum()))
             reach = float(np.abs(logs - centre).max())
-            return cls(law, centre, scale, reach, TAILS[0], ATOMS_TO / scale)
+            # a single value, beside a total loss, is smooth at any frequency
+            return cls(law, centre, scale, reach, TAILS[0], ATOMS_TO / scale if scale > SINGLE else 0.0)
         scale = float(high - low) / 1.35 or law.deviation
         beyond = np.maximum(np.array(TAILS) / steps, LEAST_TAIL)
         reaches = np.maximum(centre - law.log_quantiles(beyond), law.log_quantiles(1 - beyond) - centre)

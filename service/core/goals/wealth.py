@@ -186,7 +186,8 @@ class MixedWealth(Wealth):
         for at in range(0, some.size, TOGETHER):
             part = some[at : at + TOGETHER]
             before[part] = self._quantiles(beyond_nothing[part], cumulative)
-        return self.payment.after(before)
+        # what is depleted gets nothing of what still comes in
+        return np.where(probabilities > 1 - self.alive + UNNOTICED, self.payment.after(before), 0.0)
 
     def _quantiles(self, mass: Numbers, cumulative: Numbers) -> Numbers:
         """exp(y) with so much mass below: Newton on the mixture's distribution function, bracketed."""

@@ -222,3 +222,15 @@ def test_a_withdrawal_nobody_can_pay_empties_the_lattice() -> None:
     assert found.depletion_probability == pytest.approx(1, abs=1e-12)
     far = outlook(plan(10, [CashFlow(-1, "year", 1), CashFlow(-600, "once", 3)], 5, 1, growth))
     assert far.depletion_probability == pytest.approx(1, abs=1e-12)
+
+
+def test_all_or_nothing_beside_a_smooth_law() -> None:
+    stake = returns("up_down", up_return=0.2, down_return=-1.0, up_probability=0.9, moves=1)
+    legs = (Leg(2.0, stake), Leg(4.0, returns(expected_return=0.05, volatility=0.2)))
+    found = outlook(plan(100, [CashFlow(10, "year")], 4, 200, legs))
+    certain = plan(
+        (110 * 1.2 + 10) * 1.2, [CashFlow(10, "year")], 2, 200, returns(expected_return=0.05, volatility=0.2)
+    )
+    exact = outlook(certain)
+    assert found.depletion_probability == pytest.approx(0.19, abs=1e-11)
+    assert found.success_probability == pytest.approx(0.81 * exact.success_probability, abs=1e-9)

@@ -175,6 +175,17 @@ def test_what_cannot_survive_the_next_withdrawal_is_depleted_then(deviation: flo
     assert jump.by_year.expected_wealth[2] == pytest.approx(500 * np.exp(deviation**2 / 2), rel=1e-2)
 
 
+def test_what_comes_in_at_the_end_does_not_revive_the_depleted() -> None:
+    flows = [CashFlow(-100, "once", 1), CashFlow(1000, "year", 2, timing="end")]
+    figures = outlook(plan(100, flows, 3, 500, log_normal(0.0, 0.2)), outcomes_count=10)
+    assert figures.depletion_probability == pytest.approx(0.5, abs=1e-12)
+    assert figures.outcomes is not None
+    assert figures.outcomes[:5].tolist() == [0.0] * 5
+    assert np.all(figures.outcomes[5:] > 1000)
+    assert figures.success_probability == pytest.approx(0.5, abs=1e-12)
+    assert figures.expected_gap == pytest.approx(250, rel=1e-10)
+
+
 def test_sixty_years_of_alternating_months() -> None:
     months = np.where(np.arange(720) % 2 == 0, 900.0, -1000.0)
     figures = outlook(plan(50_000, at_steps(months, 12), 60, 10_000, log_normal(0.05, 0.15)))
