@@ -6,7 +6,7 @@ import numpy as np
 
 from service.core.arrays import Numbers
 from service.core.goals.course import COARSER, RATIO, Course
-from service.core.goals.growth import divides, drifts, growth_of, step_laws
+from service.core.goals.growth import discrete, divides, drifts, growth_of, step_laws
 from service.core.goals.listed import Step, listed_course
 from service.core.goals.plan import Plan
 from service.core.goals.quadrature import Quadrature
@@ -15,6 +15,9 @@ from service.core.goals.surprises import Surprises, blended, surprises_of
 from service.core.goals.timeline import Timeline, timeline
 from service.core.goals.wealth import Wealth
 from service.core.goals.work import Work
+
+OTHERS = (1.1, 1.45)
+"""Further coarser runs of a discrete law."""
 
 
 @dataclass(frozen=True)
@@ -91,8 +94,10 @@ def evaluate(plan: Plan, work: Work) -> Evaluation:
     if course.error_share > 0:
         last = frozenset([dates.dates.size - 1])
         fine = course if mixing == 0 else runs.one(last, RATIO, averages=False)
-        coarse = runs.one(last, RATIO / COARSER, averages=False)
-        difference = float(np.abs(runs.chances(coarse) - runs.chances(fine)).max())
+        # runs of a discrete law may agree by chance: an outcome falls on one side of a threshold or the other
+        ratios = (COARSER, *OTHERS) if discrete(plan) else (COARSER,)
+        coarse = [runs.chances(runs.one(last, RATIO / ratio, averages=False)) for ratio in ratios]
+        difference = float(np.abs(np.array(coarse) - runs.chances(fine)).max())
         error = mixing + max(course.error_share * difference, course.defect, course.error_floor)
     return Evaluation(dates, course, error)
 

@@ -24,6 +24,8 @@ ATOMS_TO = 28.8
 FARTHEST = 500.0
 """Reach of one step, in its scales, that is followed: farther tails are cut where they hold more than 1e-11."""
 TAILS = (1e-12, 1e-11, 1e-10, 1e-9, 1e-8, 1e-7, 1e-6, 1e-5)
+MOST_CELLS = 50_000
+"""Cells of a law that is narrow and wide at once; beyond, it is followed less finely, and the error shows it."""
 SINGLE = 1e-12
 LEAST_TAIL = 1e-15
 """Nearer to 1 there are no doubles."""
@@ -93,7 +95,7 @@ class StepTransform:
 
 def _rest(law: StepLaw, centre: float, scale: float, reach: float) -> float:
     """Find the frequency from which on the characteristic function is below 1e-9, at most 60 over the scale."""
-    finest = FINEST / scale
+    finest = min(FINEST / scale, MOST_CELLS / reach)
     trial = StepTransform(law, centre, scale, reach, 0.0, finest)
     spacing = np.pi / finest / 2
     length = next_fast_len(2 * int(np.ceil(reach / spacing)) + 4)
@@ -101,7 +103,7 @@ def _rest(law: StepLaw, centre: float, scale: float, reach: float) -> float:
     sizes = np.abs(trial.transform(spacing, length, count))
     above = np.flatnonzero(sizes > AT_REST)
     k = 2 * np.pi / (length * spacing) * float(above[-1] + 1)
-    return float(np.clip(ROOM * k, 4 / scale, finest))
+    return min(max(ROOM * k, 4 / scale), finest)
 
 
 def outer_transform(places: Numbers, masses: Numbers, step: float, count: int) -> Complexes:

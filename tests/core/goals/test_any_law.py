@@ -234,3 +234,18 @@ def test_all_or_nothing_beside_a_smooth_law() -> None:
     exact = outlook(certain)
     assert found.depletion_probability == pytest.approx(0.19, abs=1e-11)
     assert found.success_probability == pytest.approx(0.81 * exact.success_probability, abs=1e-9)
+
+
+@pytest.mark.parametrize("deviation", [1e-7, 1e-4, 5e-3])
+def test_a_law_narrow_and_wide_at_once_is_followed_as_finely_as_there_is_time(deviation: float) -> None:
+    both = returns("normal_mixture", components=[[0.9, 0.07, deviation], [0.1, -0.3, 0.4]])
+    found = outlook(plan(100, SPENDING, 10, 50, both))
+
+    def growth(rng: np.random.Generator, count: int) -> Numbers:
+        calm = rng.random(count) < 0.9
+        drawn_now = np.where(calm, rng.normal(0.07, deviation, count), rng.normal(-0.3, 0.4, count))
+        return np.maximum(1 + drawn_now, 0)
+
+    success, depleted, _ = simulated(100, np.full(10, -9.0), growth, 50)
+    assert found.success_probability == pytest.approx(success, abs=4e-3 + found.numerical_error)
+    assert found.depletion_probability == pytest.approx(depleted, abs=4e-3 + found.numerical_error)
