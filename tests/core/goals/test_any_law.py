@@ -244,7 +244,7 @@ def test_a_law_narrow_and_wide_at_once_is_followed_as_finely_as_there_is_time(de
     def growth(rng: np.random.Generator, count: int) -> Numbers:
         calm = rng.random(count) < 0.9
         drawn_now = np.where(calm, rng.normal(0.07, deviation, count), rng.normal(-0.3, 0.4, count))
-        return np.maximum(1 + drawn_now, 0)
+        return np.asarray(np.maximum(1 + drawn_now, 0), np.float64)
 
     success, depleted, _ = simulated(100, np.full(10, -9.0), growth, 50)
     assert found.success_probability == pytest.approx(success, abs=4e-3 + found.numerical_error)
