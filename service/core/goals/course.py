@@ -66,8 +66,9 @@ class Course:
 
     `unpaid`: P(first depleted by the flow of the date). `lost`: P(first depleted by a total loss up to the date).
     `expected`: E[V] before the flow of the date (at the horizon after it). `wealth`: the law of V at the dates asked
-    for, likewise. `defect`: largest probability that the recursion lost or made. What it was computed by, and how its
-    error follows from a coarser run, as in Growth; as it stands, for outcomes that are all listed.
+    for, likewise. `defect`: largest probability that the recursion lost or made. `roughness`: probability that may be
+    on the wrong side of a withdrawal, see Wealth. What it was computed by, and how its error follows from a coarser
+    run, as in Growth; as it stands, for outcomes that are all listed.
     """
 
     unpaid: Numbers
@@ -75,6 +76,7 @@ class Course:
     expected: Numbers
     wealth: dict[int, Wealth] = field(default_factory=dict)
     defect: float = 0.0
+    roughness: float = 0.0
     method: str = "enumeration"
     error_share: float = 0.0
     error_floor: float = 1e-12

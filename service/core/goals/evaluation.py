@@ -16,9 +16,6 @@ from service.core.goals.timeline import Timeline, timeline
 from service.core.goals.wealth import Wealth
 from service.core.goals.work import Work
 
-OTHERS = (1.1, 1.45)
-"""Further coarser runs of a discrete law."""
-
 
 @dataclass(frozen=True)
 class Evaluation:
@@ -75,6 +72,11 @@ class Runs:
         reached = [last.solvent_at_least(target) for target in self.plan.targets] if last else []
         return np.concatenate([np.cumsum(course.unpaid + course.lost), reached])
 
+    def roughness(self, course: Course) -> float:
+        """Give the probability that may be on the wrong side of a withdrawal or a target."""
+        last = course.wealth[self.dates.dates.size - 1]
+        return course.roughness + max(last.roughness(target) for target in self.plan.targets)
+
     def _error_of(self, surprises: Surprises, courses: list[Course]) -> float:
         """Estimate the error of the rule over the mean return by that of the rule with half of its places."""
         if len(courses) == 1:
@@ -94,11 +96,11 @@ def evaluate(plan: Plan, work: Work) -> Evaluation:
     if course.error_share > 0:
         last = frozenset([dates.dates.size - 1])
         fine = course if mixing == 0 else runs.one(last, RATIO, averages=False)
+        coarse = runs.one(last, RATIO / COARSER, averages=False)
+        difference = float(np.abs(runs.chances(coarse) - runs.chances(fine)).max())
         # runs of a discrete law may agree by chance: an outcome falls on one side of a threshold or the other
-        ratios = (COARSER, *OTHERS) if discrete(plan) else (COARSER,)
-        coarse = [runs.chances(runs.one(last, RATIO / ratio, averages=False)) for ratio in ratios]
-        difference = float(np.abs(np.array(coarse) - runs.chances(fine)).max())
-        error = mixing + max(course.error_share * difference, course.defect, course.error_floor)
+        rough = max(runs.roughness(course), runs.roughness(coarse)) if discrete(plan) else 0.0
+        error = min(mixing + max(course.error_share * difference, course.defect, course.error_floor, rough), 1.0)
     return Evaluation(dates, course, error)
 
 

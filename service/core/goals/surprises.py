@@ -55,6 +55,7 @@ def blended(surprises: Surprises, courses: Sequence[Course]) -> Course:
         lost=surprises.weights @ np.array([course.lost for course in courses]),
         expected=surprises.weights @ np.array([course.expected for course in courses]),
         defect=max(course.defect for course in courses),
+        roughness=max(course.roughness for course in courses),
         method=courses[0].method,
         error_share=courses[0].error_share,
         error_floor=courses[0].error_floor,
