@@ -4,6 +4,7 @@ from typing import Any
 
 import pytest
 
+from service.core.returns import RETURN_MODELS
 from tests.conftest import Asker
 
 OUTLOOKS, REQUIREMENTS = "/v1/goal-outlooks", "/v1/goal-requirements"
@@ -115,6 +116,19 @@ class TestOutlooks:
             "same_spending_whatever_happens",
             "estimates_taken_as_true",
         } <= found
+
+    @pytest.mark.parametrize("model", sorted(RETURN_MODELS))
+    def test_returns_of_a_portfolio_go_into_a_plan_unchanged(self, ask: Asker, model: str) -> None:
+        models = {each["name"]: each for each in ask.get("/v1/return-models").get_json()["return_models"]}
+        listed = models[model]["parameterisations"][0]["parameters"]
+        returns = {"model": model, "period": "year"} | {each["name"]: each["example"] for each in listed}
+        # without flows, reaching the target is keeping a floor over the horizon
+        portfolio = {"portfolio": {"name": "Harbour", "returns": returns}, "threshold": 0.04, "horizon_years": 2}
+        floor = ask.answer("/v1/shortfalls", portfolio)
+        plan = {"initial_value": 1000, "horizon_years": 2, "target": 1000 * 1.04**2, "returns": returns}
+        goal = ask.answer(OUTLOOKS, plan)
+        error = goal["basis"]["numerical_error"] + floor["basis"]["numerical_error"]
+        assert 1 - goal["success_probability"] == pytest.approx(floor["shortfall_probability"], abs=error + 1e-12)
 
     def test_plans_side_by_side(self, ask: Asker) -> None:
         batch = ask.answer(OUTLOOKS, {"questions": [SAVING, SPENDING]})
