@@ -29,6 +29,10 @@ class Growth(Protocol):
         """The least error that is stated."""
 
     @property
+    def discrete(self) -> bool:
+        """Whether it takes single values, which lie on one side of a withdrawal or the other."""
+
+    @property
     def random(self) -> Truths:
         """Whether growth from each date to the next is uncertain."""
 

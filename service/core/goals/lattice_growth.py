@@ -50,6 +50,11 @@ class LatticeGrowth:
     _filters: dict[tuple[object, ...], Complexes] = field(default_factory=dict)
 
     @property
+    def discrete(self) -> bool:
+        """Whether some law takes single values."""
+        return any(transform.law.law.discrete for transform in self.transforms)
+
+    @property
     def random(self) -> Truths:
         """Whether growth from each date to the next is uncertain."""
         return np.array([not t.law.certain for t in self.transforms])[self.laws]

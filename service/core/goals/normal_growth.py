@@ -23,6 +23,8 @@ class NormalGrowth:
     error_share: ClassVar[float] = 10 * float(np.exp(-np.square(np.pi * RATIO) * (1 - COARSER**-2)))
     """The rule's error falls as exp(-pi^2 r^2); ten times what that makes of the difference."""
 
+    discrete: ClassVar[bool] = False
+
     means: Numbers
     variances: Numbers
 

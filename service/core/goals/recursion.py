@@ -131,7 +131,8 @@ class Recursion:
         if payment.threshold > 0:
             alive = min(held.probability_at_least(payment.threshold), state.alive)
             course.unpaid[date] = state.alive - alive
-            course.roughness += MixedWealth.of(held, state.alive, payment).roughness(0.0)
+            if self.growth.discrete:
+                course.roughness += MixedWealth.of(held, state.alive, payment).roughness(0.0)
             state.alive, state.doomed = alive, 0.0
         if self.averages:
             mean = state.mean_held + payment.amount * state.alive
